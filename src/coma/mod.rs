@@ -1,0 +1,1 @@
+//! Floor 5: from band flux to production rate.

@@ -1,0 +1,1 @@
+//! Floor 4: continuum and bands fitted together.

@@ -1,0 +1,11 @@
+//! Floor 3: where the comet was, what the aperture saw, and the spectrum in the comet's rest frame.
+//!
+//! Imports floors 0 and 2. Never touches a file.
+
+mod aperture;
+mod geometry;
+mod rest;
+
+pub use aperture::{Aperture, km_per_arcsec};
+pub use geometry::Geometry;
+pub use rest::{Frame, RestSpectrum, to_rest};

@@ -1,0 +1,19 @@
+//! Abundance ratios of comets from reduced spectra.
+//!
+//! A spectrum walks through the floors once, upwards; no floor imports a higher one:
+//!
+//! ```text
+//! plan.toml ──► plan ─► analysis ────────────────────────────────────► report, figures
+//! spectrum  ──► spectrum ─► frame ─► fit ─► coma ─► ratio ─► standing
+//! line-lists ─► tables ──────────────┴───────┴───────┴────────┘
+//! ```
+//!
+//! Inside, wavelengths are vacuum Å and fluxes are cgs (erg s⁻¹ cm⁻²); units are converted once, in
+//! the readers. Every dimensional field carries its unit as a suffix.
+
+pub mod coma;
+pub mod fit;
+pub mod frame;
+pub mod ground;
+pub mod spectrum;
+pub mod tables;

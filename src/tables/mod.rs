@@ -1,0 +1,1 @@
+//! Floor 1: every number taken from literature.
