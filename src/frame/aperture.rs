@@ -48,7 +48,7 @@ impl Aperture {
             ],
         };
         for (name, value) in sizes {
-            if !(*value > 0.0 && *value <= 36_000.0) {
+            if *value <= 0.0 || !(0.0..=36_000.0).contains(value) {
                 return Err(Error::plan(format!(
                     "aperture {name} = {value} is outside 0 to 36000 arcsec"
                 )));
@@ -61,7 +61,7 @@ impl Aperture {
         } = self
         {
             for value in [offset_across_arcsec, offset_along_arcsec] {
-                if !(value.abs() <= 36_000.0) {
+                if !(-36_000.0..=36_000.0).contains(value) {
                     return Err(Error::plan(format!(
                         "aperture offset {value} is outside -36000 to 36000 arcsec"
                     )));
