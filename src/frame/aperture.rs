@@ -61,7 +61,7 @@ impl Aperture {
         } = self
         {
             for value in [offset_across_arcsec, offset_along_arcsec] {
-                if !(-36_000.0..=36_000.0).contains(value) {
+                if !(-36_000.0..=36_000.0).contains(&value) {
                     return Err(Error::plan(format!(
                         "aperture offset {value} is outside -36000 to 36000 arcsec"
                     )));
