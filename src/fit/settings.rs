@@ -1,0 +1,142 @@
+//! What to fit and how: the small settings struct of this floor.
+
+use super::Sampling;
+use crate::ground::{Error, Result};
+
+/// Whether a shape parameter (centre or width) is fitted.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Freedom {
+    /// Fitted if the band is strong enough to carry it, held at the expected value otherwise.
+    Auto,
+    /// Always fitted.
+    Free,
+    /// Held at the expected value.
+    Held,
+}
+
+/// Spectral resolution of the instrument.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum Resolution {
+    /// λ/FWHM.
+    ResolvingPower(f64),
+    /// A constant full width at half maximum, Å.
+    FwhmAa(f64),
+}
+
+impl Resolution {
+    /// Instrumental full width at half maximum at a wavelength, Å.
+    pub fn fwhm_aa(&self, wavelength_aa: f64) -> f64 {
+        match *self {
+            Self::ResolvingPower(r) => wavelength_aa / r,
+            Self::FwhmAa(fwhm) => fwhm,
+        }
+    }
+}
+
+/// One emission band as the fit sees it.
+#[derive(Clone, Debug)]
+pub struct BandModel {
+    /// Identifier for results and messages.
+    pub id: String,
+    /// Expected rest centre, vacuum Å.
+    pub centre_aa: f64,
+    /// Intrinsic full width at half maximum, Å (0 for a line); the instrument's is added in square.
+    pub fwhm_aa: Option<f64>,
+    /// Range fitted around the band, vacuum Å. Overlapping windows are fitted as one.
+    pub window_aa: (f64, f64),
+    /// Freedom of the centre.
+    pub centre: Freedom,
+    /// Freedom of the width.
+    pub width: Freedom,
+    /// Bands with the same tie share one velocity and one width factor.
+    pub tie: Option<String>,
+}
+
+/// Settings of one spectrum's fit.
+#[derive(Clone, Debug)]
+pub struct FitSettings {
+    /// The bands to measure.
+    pub bands: Vec<BandModel>,
+    /// Instrumental resolution, if known.
+    pub resolution: Option<Resolution>,
+    /// Chebyshev order of the continuum in every window; `None` chooses 2, or 3 where the window
+    /// is wider than 15 % of its wavelength.
+    pub continuum_order: Option<usize>,
+    /// If not empty, samples away from every band core are used only inside these ranges, Å.
+    pub continuum_ranges_aa: Vec<(f64, f64)>,
+    /// Ranges left out, Å.
+    pub excluded_aa: Vec<(f64, f64)>,
+    /// How a profile is compared with a sample.
+    pub sampling: Sampling,
+    /// Signal-to-noise from which a band counts as detected.
+    pub detection_sigma: f64,
+    /// Signal-to-noise of the held fit from which an automatic band's shape is fitted.
+    pub free_shape_sigma: f64,
+}
+
+impl FitSettings {
+    /// Settings with everything at its default.
+    pub fn new(bands: Vec<BandModel>) -> Self {
+        Self {
+            bands,
+            resolution: None,
+            continuum_order: None,
+            continuum_ranges_aa: Vec::new(),
+            excluded_aa: Vec::new(),
+            sampling: Sampling::Centre,
+            detection_sigma: 3.0,
+            free_shape_sigma: 10.0,
+        }
+    }
+
+    /// Refuses settings that no spectrum could satisfy.
+    ///
+    /// # Errors
+    /// Names the first impossible value with its allowed range.
+    pub fn check(&self) -> Result<()> {
+        if self.bands.is_empty() {
+            return Err(Error::plan("no bands to measure").remedy("name at least one band"));
+        }
+        if self.continuum_order.is_some_and(|o| o > 12) {
+            return Err(Error::plan(format!(
+                "continuum order {} is outside 0 to 12",
+                self.continuum_order.unwrap_or_default()
+            )));
+        }
+        for band in &self.bands {
+            check_band(band)?;
+        }
+        Ok(())
+    }
+
+    /// Expected full width at half maximum of a band: intrinsic and instrument in square, Å.
+    /// `None` when neither is known.
+    pub fn expected_fwhm_aa(&self, band: &BandModel) -> Option<f64> {
+        let instrument = self.resolution.map(|r| r.fwhm_aa(band.centre_aa));
+        match (band.fwhm_aa, instrument) {
+            (Some(b), Some(i)) => Some(b.hypot(i)),
+            (Some(b), None) if b > 0.0 => Some(b),
+            (_, i) => i,
+        }
+    }
+}
+
+fn check_band(band: &BandModel) -> Result<()> {
+    let (low, high) = band.window_aa;
+    if !(low < band.centre_aa && band.centre_aa < high) {
+        return Err(Error::plan(format!(
+            "band {}: centre {} Å is not inside its window {low} to {high} Å",
+            band.id, band.centre_aa
+        )));
+    }
+    if let Some(fwhm) = band.fwhm_aa
+        && !(0.0..high - low).contains(&fwhm)
+    {
+        return Err(Error::plan(format!(
+            "band {}: width {fwhm} Å is outside 0 to its window of {} Å",
+            band.id,
+            high - low
+        )));
+    }
+    Ok(())
+}
