@@ -325,6 +325,10 @@ impl Picked {
                 .continuum_order
                 .unwrap_or_else(|| default_order(group.window_aa)),
             sampling: settings.sampling,
+            instrument_fwhm_aa: bands
+                .iter()
+                .map(|b| settings.resolution.map(|r| r.fwhm_aa(b.centre_aa)))
+                .collect(),
             expected_fwhm_aa: bands.iter().map(|b| settings.expected_fwhm_aa(b)).collect(),
             bands,
             free_shape_sigma: settings.free_shape_sigma,

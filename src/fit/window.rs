@@ -28,6 +28,7 @@ pub(super) struct WindowInput<'a> {
     pub sampling: Sampling,
     pub bands: Vec<&'a BandModel>,
     pub expected_fwhm_aa: Vec<Option<f64>>,
+    pub instrument_fwhm_aa: Vec<Option<f64>>,
     pub free_shape_sigma: f64,
 }
 
@@ -356,15 +357,16 @@ fn shift_range(input: &WindowInput<'_>, b: usize, fwhm: f64) -> ((f64, f64), Vec
 fn stretch_range(input: &WindowInput<'_>, b: usize, fwhm: f64) -> ((f64, f64), Vec<f64>) {
     let window = input.window_aa.1 - input.window_aa.0;
     let widest = (0.5 * window / fwhm).max(1.2);
-    let (low, high) = if input.expected_fwhm_aa[b].is_some() {
-        (
-            0.3_f64.max(0.5 * pixel_aa(input) / fwhm).min(0.9),
-            widest.min(6.0),
-        )
+    // An intrinsic width is an opinion, an instrument's width nearly a fact: but neither may force
+    // the flux, so lines much narrower than expected stay within reach.
+    let narrowest = input.instrument_fwhm_aa[b].map_or(pixel_aa(input), |i| 0.3 * i);
+    let low = (narrowest / fwhm).clamp(0.02, 0.9);
+    let high = if input.expected_fwhm_aa[b].is_some() {
+        widest.min(6.0)
     } else {
-        (0.25, widest)
+        widest
     };
-    let candidates = (-4..=16)
+    let candidates = (-12..=16)
         .map(|i| 1.35_f64.powi(i))
         .filter(|s| *s > 1.02 * low && *s < 0.98 * high)
         .collect();
