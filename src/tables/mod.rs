@@ -29,3 +29,6 @@ pub use provenance::{Confidence, How, Provenance, Source};
 pub use set::Tables;
 pub use solar::SolarIrradiance;
 pub use strengths::Strength;
+
+#[cfg(test)]
+mod value_tests;
