@@ -102,6 +102,35 @@ fn an_own_row_is_taken() {
     assert_eq!(t.band("NH2-6330").unwrap().species, Species::new("NH2"));
 }
 
+/// The indented example rows of a folder's README, with the source they name, are accepted.
+#[test]
+fn the_rows_shown_in_the_readmes_are_accepted() {
+    let root = Path::new(env!("CARGO_MANIFEST_DIR"));
+    let example = |folder: &str, n: usize| {
+        let text = fs::read_to_string(root.join(folder).join("README.md")).unwrap();
+        let rows = text.lines().filter_map(|l| l.strip_prefix("    "));
+        rows.map(str::to_owned).nth(n).expect("an example row")
+    };
+    let append = |dir: &TempDir, file: &str, row: &str| {
+        let path = dir.path().join(file);
+        let text = fs::read_to_string(&path).unwrap();
+        fs::write(path, format!("{text}{row}\n")).unwrap();
+    };
+    let lists = edited("line-lists", "bands.csv", "#", "#");
+    append(&lists, "sources.csv", "me2030,\"Me 2030, private\",");
+    append(&lists, "bands.csv", &example("line-lists", 0));
+    append(&lists, "efficiencies.csv", &example("line-lists", 1));
+    let comets = edited("comparison-set", "sources.csv", "#", "#");
+    append(&comets, "sources.csv", "me2031,Me 2031,");
+    append(&comets, "measurements.csv", &example("comparison-set", 0));
+    let t = Tables::load(Some(lists.path()), Some(comets.path())).unwrap();
+    assert_eq!(
+        t.default_efficiency("NH2-6330").unwrap().provenance.source,
+        "me2030"
+    );
+    assert_eq!(t.comparison().last().unwrap().err_plus, Some(0.03));
+}
+
 #[test]
 fn bad_line_lists_are_refused() {
     let e = refused_lists("bands.csv", "4.2589,um", "4.2589,mm");
