@@ -1,0 +1,275 @@
+//! The inside of one fitted window: samples, curves, band names, residuals.
+
+use super::axis::{Axis, Scale};
+use super::canvas::{Anchor, Canvas, Point, Type};
+use super::fit::FitPanel;
+use super::label::{Plan, plan};
+use super::marker::Shape;
+use super::panel::Panel;
+use super::style::{
+    CONTINUUM, DARK, DOTTED, FAINT, MIDDLE, MODEL, PALE, Stroke, TICK_PT, WHITE, series,
+};
+use super::thin::extremes;
+use crate::ground::Result;
+
+/// Runs of samples of which the lowest and the highest are shown.
+const BINS: usize = 250;
+/// Most error bars.
+const MOST_BARS: usize = 160;
+/// Radius of a data point, pt.
+const POINT_PT: f64 = 0.8;
+/// Residuals beyond this many errors are shown at the edge.
+const MOST_SIGMA: f64 = 10.0;
+const BAR: Stroke = Stroke::solid(MIDDLE, 0.35);
+
+/// One window placed on the page.
+pub(super) struct Cell<'a> {
+    pub data: &'a FitPanel,
+    pub main: Panel,
+    pub residual: Panel,
+    pub exponent: i32,
+    pub y_title: Vec<String>,
+}
+
+/// The range of used samples with their errors and of all curves. Samples that were not fitted do not
+/// count unless there is nothing else: a cosmic-ray hit must not flatten the rest.
+pub(super) fn flux_range(p: &FitPanel) -> Result<Axis> {
+    let used = (0..p.x.len()).filter(|&i| p.used[i] && p.x[i].is_finite());
+    let samples = used.flat_map(|i| {
+        let s = if p.sigma[i].is_finite() {
+            p.sigma[i].abs()
+        } else {
+            0.0
+        };
+        [p.y[i] - s, p.y[i] + s]
+    });
+    let bands = p.bands.iter().flat_map(|b| b.y.iter().zip(&p.continuum));
+    let curves = p.continuum.iter().chain(&p.total).copied();
+    let values: Vec<f64> = samples
+        .chain(curves)
+        .chain(bands.map(|(b, c)| b + c))
+        .filter(|v| v.is_finite())
+        .collect();
+    let what = "ordinate of a fitted window";
+    if values.is_empty() {
+        return Axis::covering(p.y.iter().copied(), Scale::Linear, what);
+    }
+    Ok(Axis::covering(values, Scale::Linear, what)?.padded(0.05, 0.05))
+}
+
+/// Symmetric range of the residuals, at least ±4 and at most ±10 errors.
+pub(super) fn residual_range(p: &FitPanel) -> Axis {
+    let used = (0..p.x.len()).filter(|&i| p.used[i]);
+    let sizes = used.map(|i| residual(p, i).abs()).filter(|r| r.is_finite());
+    let most = (1.15 * sizes.fold(0.0, f64::max)).clamp(4.2, MOST_SIGMA);
+    Axis {
+        lo: -most,
+        hi: most,
+        scale: Scale::Linear,
+    }
+}
+
+/// (data − model) / σ; not a number without a positive error.
+fn residual(p: &FitPanel, i: usize) -> f64 {
+    if p.sigma[i] > 0.0 {
+        (p.y[i] - p.model[i]) / p.sigma[i]
+    } else {
+        f64::NAN
+    }
+}
+
+/// A data point with its error bar between two ordinates on the page.
+pub(super) fn data_mark(canvas: &mut Canvas, p: Point, bar: Option<(f64, f64)>) {
+    if let Some((top, bottom)) = bar {
+        canvas.path(&[(p.0, top), (p.0, bottom)], BAR);
+    }
+    canvas.disc(p, POINT_PT, DARK);
+}
+
+/// A sample that was not fitted, or one beyond the frame.
+pub(super) fn pale_mark(canvas: &mut Canvas, p: Point, shape: Shape) {
+    let stroke = Stroke::solid(PALE, 0.5);
+    let (x, y) = p;
+    match shape {
+        Shape::TriangleUp => canvas.path(&triangle(x, y, 1.0), stroke),
+        Shape::TriangleDown => canvas.path(&triangle(x, y, -1.0), stroke),
+        _ => {
+            canvas.disc(p, 1.1, WHITE);
+            canvas.ring(p, 1.1, stroke);
+        }
+    }
+}
+
+/// A closed triangle whose tip points up (`way` = 1) or down (−1) and touches `y`.
+fn triangle(x: f64, y: f64, way: f64) -> [Point; 4] {
+    let base = y + 3.4 * way;
+    [
+        (x, y + 0.4 * way),
+        (x + 1.8, base),
+        (x - 1.8, base),
+        (x, y + 0.4 * way),
+    ]
+}
+
+impl Cell<'_> {
+    /// Everything inside the main panel.
+    pub(super) fn draw_main(&self, canvas: &mut Canvas) {
+        let d = self.data;
+        let (labels, main) = self.with_room_for_labels();
+        for &(from, to) in &d.left_out {
+            hatch(canvas, &main, from, to);
+        }
+        for (k, band) in d.bands.iter().enumerate() {
+            let top: Vec<f64> = band
+                .y
+                .iter()
+                .zip(&d.continuum)
+                .map(|(b, c)| b + c)
+                .collect();
+            let style = series(k, 0.9);
+            main.fill_between(
+                canvas,
+                &d.grid_x,
+                (&d.continuum, &top),
+                (style.colour, 0.16),
+            );
+            main.curve(canvas, &d.grid_x, &top, style);
+        }
+        main.curve(canvas, &d.grid_x, &d.continuum, CONTINUUM);
+        self.samples(canvas, &main);
+        main.curve(canvas, &d.grid_x, &d.total, MODEL);
+        self.names(canvas, &main, &labels);
+    }
+
+    /// The plan of the band names, and the main panel with its range opened upwards for them.
+    fn with_room_for_labels(&self) -> (Plan, Panel) {
+        let named: Vec<(f64, &str)> = self
+            .data
+            .bands
+            .iter()
+            .map(|b| (self.peak_px(&b.y), b.label.as_str()))
+            .collect();
+        let labels = plan(&named, self.main.left, self.main.right());
+        let mut main = self.main;
+        main.y = self.opened_range(labels.height_pt);
+        (labels, main)
+    }
+
+    fn opened_range(&self, label_pt: f64) -> Axis {
+        let share = (label_pt / self.main.height).min(0.6);
+        self.main.y.padded(0.0, share / (1.0 - share))
+    }
+
+    /// Page abscissa of a band's greatest departure from the continuum.
+    fn peak_px(&self, y: &[f64]) -> f64 {
+        let finite = (0..y.len()).filter(|&i| y[i].is_finite() && self.data.grid_x[i].is_finite());
+        let peak = finite.max_by(|&a, &b| y[a].abs().total_cmp(&y[b].abs()));
+        match peak {
+            Some(i) => self.main.px_inside(self.data.grid_x[i]),
+            None => self.main.left + 0.5 * self.main.width,
+        }
+    }
+
+    fn samples(&self, canvas: &mut Canvas, main: &Panel) {
+        let d = self.data;
+        let shown = self.shown(&d.y);
+        let every = shown.len().div_ceil(MOST_BARS).max(1);
+        for (n, &i) in shown.iter().enumerate() {
+            let p = (main.px(d.x[i]), main.py(d.y[i]));
+            let s = d.sigma[i];
+            if !main.holds(p) {
+                edge_mark(canvas, main, p);
+            } else if d.used[i] {
+                let bar = (s > 0.0 && s.is_finite() && n % every == 0)
+                    .then(|| (main.py_inside(d.y[i] + s), main.py_inside(d.y[i] - s)));
+                data_mark(canvas, p, bar);
+            } else {
+                pale_mark(canvas, p, Shape::Circle);
+            }
+        }
+    }
+
+    /// Indices of the samples to draw for these ordinates.
+    fn shown(&self, y: &[f64]) -> Vec<usize> {
+        let kept = extremes(y, BINS);
+        let finite = |&i: &usize| self.data.x[i].is_finite();
+        kept.into_iter().filter(finite).collect()
+    }
+
+    fn names(&self, canvas: &mut Canvas, main: &Panel, labels: &Plan) {
+        let d = self.data;
+        let foot = |k: usize| {
+            let x = self.peak_px(&d.bands[k].y);
+            let near = |px: f64| (px - x).abs() < 2.0;
+            let curve = d.grid_x.iter().zip(&d.total);
+            let samples = d.x.iter().zip(&d.y);
+            let tops = curve
+                .chain(samples)
+                .filter(|(gx, gy)| gy.is_finite() && near(main.px(**gx)))
+                .map(|(_, gy)| main.py_inside(*gy));
+            tops.fold(main.bottom(), f64::min) - 2.0
+        };
+        labels.draw(canvas, main.top, &foot, &|k| Some(series(k, 0.9)));
+        if labels.unplaced > 0 {
+            let text = format!("{} more bands not named", labels.unplaced);
+            let p = (main.right() - 4.0, main.bottom() - 6.0);
+            canvas.text(&text, p, Type::new(TICK_PT, Anchor::End).colour(DARK));
+        }
+    }
+
+    /// Everything inside the residual panel.
+    pub(super) fn draw_residuals(&self, canvas: &mut Canvas) {
+        let (d, panel) = (self.data, &self.residual);
+        for &(from, to) in &d.left_out {
+            hatch(canvas, panel, from, to);
+        }
+        let line = |v: f64| [(panel.left, panel.py(v)), (panel.right(), panel.py(v))];
+        canvas.path(&line(3.0), DOTTED);
+        canvas.path(&line(-3.0), DOTTED);
+        canvas.path(&line(0.0), Stroke::solid(DARK, 0.5));
+        let r: Vec<f64> = (0..d.x.len()).map(|i| residual(d, i)).collect();
+        for i in self.shown(&r) {
+            let p = (panel.px(d.x[i]), panel.py(r[i]));
+            if !panel.holds(p) {
+                edge_mark(canvas, panel, p);
+            } else if d.used[i] {
+                data_mark(canvas, p, None);
+            } else {
+                pale_mark(canvas, p, Shape::Circle);
+            }
+        }
+    }
+}
+
+/// A triangle at the edge for a sample above or below the frame.
+fn edge_mark(canvas: &mut Canvas, panel: &Panel, p: Point) {
+    let x = p.0.clamp(panel.left + 2.0, panel.right() - 2.0);
+    if p.1 < panel.top {
+        pale_mark(canvas, (x, panel.top), Shape::TriangleUp);
+    } else {
+        pale_mark(canvas, (x, panel.bottom()), Shape::TriangleDown);
+    }
+}
+
+/// Pale ground and slanted lines over a range of abscissae.
+fn hatch(canvas: &mut Canvas, panel: &Panel, from: f64, to: f64) {
+    if !(from.is_finite() && to.is_finite()) {
+        return;
+    }
+    let (a, b) = (panel.px_inside(from.min(to)), panel.px_inside(from.max(to)));
+    if b - a < 0.05 {
+        return;
+    }
+    let strip = Panel {
+        left: a,
+        width: b - a,
+        ..*panel
+    };
+    canvas.rectangle((a, panel.top), (b, panel.bottom()), FAINT, 0.5);
+    let mut x = panel.left - panel.height;
+    while x < b {
+        let line = [(x, panel.bottom()), (x + panel.height, panel.top)];
+        strip.chain(canvas, &line, Stroke::solid(PALE, 0.35));
+        x += 4.0;
+    }
+}
