@@ -60,11 +60,11 @@ impl Axis {
                 "{what}: the range {lo:e} to {hi:e} is too large to draw"
             )));
         }
-        Ok(Self { lo, hi, scale }.opened())
+        Ok(Self { lo, hi, scale }.not_empty())
     }
 
     /// Gives an empty range some room.
-    fn opened(mut self) -> Self {
+    fn not_empty(mut self) -> Self {
         match self.scale {
             Scale::Linear => {
                 let size = self.lo.abs().max(self.hi.abs());
@@ -103,6 +103,12 @@ impl Axis {
         } else {
             self
         }
+    }
+
+    /// The range widened at its upper end so that the upper `share` of the axis (at most 0.6) is free.
+    pub(super) fn opened(self, share: f64) -> Self {
+        let share = share.min(0.6);
+        self.padded(0.0, share / (1.0 - share))
     }
 
     /// Place along the axis: 0 at `lo`, 1 at `hi`. Values ≤ 0 on a logarithmic axis lie at −∞.

@@ -6,7 +6,7 @@ use super::fit_panel::Cell;
 use super::marker::Shape;
 use super::panel::{Panel, labels_width, title_lines, unit_with_power, x_ticks, y_ticks};
 use super::style::{CONTINUUM, DARK, LABEL_PT, LINE_PT, MODEL, TICK_PT, TITLE_PT, Width};
-use super::text::{width_pt, wrap};
+use super::text::{elide, width_pt, wrap};
 use crate::ground::{Error, Result};
 
 /// The fitted windows of one spectrum.
@@ -70,6 +70,8 @@ const RIGHT_PT: f64 = 11.0;
 const BETWEEN_PT: f64 = 3.0;
 /// Height of the tick labels under a panel, pt.
 const TICKS_PT: f64 = 11.0;
+/// Rounds in which margins and ranges settle.
+const ROUNDS: usize = 3;
 /// Height to which a page is filled where the windows are many, pt.
 const PAGE_PT: f64 = 660.0;
 
@@ -84,8 +86,8 @@ struct Sizes {
 }
 
 /// Draws the fitted windows: data, continuum, bands and total model above, residuals in units of the
-/// errors below. More than 500 samples are thinned to the extremes of 250 runs; at most 160 error
-/// bars are drawn. Two columns when there are several windows and the figure is [`Width::Double`].
+/// errors below. Of more than 400 samples only every n-th is a point with an error bar, over a pale
+/// line through the extremes of all. Two columns when there are several windows and the figure is [`Width::Double`].
 ///
 /// # Errors
 /// No window; lengths that disagree; no finite value to draw; ranges beyond double precision.
@@ -146,8 +148,7 @@ fn sizes(figure: &FitFigure, width: Width) -> Sizes {
     } else {
         1
     };
-    let captioned = figure.panels.iter().any(|p| !p.caption.trim().is_empty());
-    let caption = if captioned { LINE_PT + 1.0 } else { 3.0 };
+    let caption = LINE_PT + 1.0;
     let rows = count.div_ceil(columns) as f64;
     let fixed = caption + BETWEEN_PT + TICKS_PT + 6.0;
     let (most, least) = if width == Width::Double && columns == 1 {
@@ -176,12 +177,15 @@ fn cells<'a>(figure: &'a FitFigure, sizes: &Sizes, top: f64) -> Result<Vec<Cell<
     }
     for column in 0..sizes.columns {
         let mine = || (column..figure.panels.len()).step_by(sizes.columns);
-        let margin = mine().map(|i| cells[i].margin_pt()).fold(0.0, f64::max);
-        for i in mine() {
-            cells[i].set_left(
-                column as f64 * sizes.cell_width + EDGE_PT + margin,
-                sizes.cell_width - EDGE_PT - margin - RIGHT_PT,
-            );
+        // Band names open the range, which can make tick labels wider; a few rounds settle that.
+        for _ in 0..ROUNDS {
+            let margin = mine().map(|i| cells[i].margin_pt()).fold(0.0, f64::max);
+            for i in mine() {
+                cells[i].place(
+                    column as f64 * sizes.cell_width + EDGE_PT + margin,
+                    sizes.cell_width - EDGE_PT - margin - RIGHT_PT,
+                );
+            }
         }
     }
     Ok(cells)
@@ -220,6 +224,8 @@ fn cell<'a>(
         data,
         main,
         residual,
+        closed: y,
+        labels: super::label::plan(&[], left, left),
         exponent,
         y_title: title_lines(figure.y_quantity.trim(), &unit, sizes.main),
     })
@@ -230,14 +236,12 @@ impl Cell<'_> {
     fn margin_pt(&self) -> f64 {
         let main = labels_width(&y_ticks(&self.main.y, self.main.height, self.exponent));
         let residual = labels_width(&y_ticks(&self.residual.y, self.residual.height, 0));
-        main.max(residual) + 2.0 + LINE_PT * self.y_title.len().max(1) as f64
+        let lines = self.y_title.len().max(self.residual_title().len());
+        main.max(residual) + 2.0 + LINE_PT * lines as f64
     }
 
-    fn set_left(&mut self, left: f64, width: f64) {
-        for panel in [&mut self.main, &mut self.residual] {
-            panel.left = left;
-            panel.width = width;
-        }
+    fn residual_title(&self) -> Vec<String> {
+        title_lines("Residual", "(σ)", self.residual.height)
     }
 
     /// Draws both panels with their axes.
@@ -251,11 +255,11 @@ impl Cell<'_> {
         self.residual.frame(canvas, &x, &r, true);
         let from = labels_width(&y).max(labels_width(&r)) + 2.0;
         self.main.y_title(canvas, &self.y_title, from);
-        self.residual.y_title(canvas, &["Δ / σ".to_owned()], from);
+        self.residual.y_title(canvas, &self.residual_title(), from);
         if let Some(label) = x_label {
             self.residual.x_title(canvas, label, TICKS_PT + 5.0);
         }
-        let caption = super::text::elide(self.data.caption.trim(), TICK_PT, false, self.main.width);
+        let caption = elide(&self.caption(), TICK_PT, false, self.main.width);
         let p = (self.main.left, self.main.top - 5.0);
         canvas.text(&caption, p, Type::new(TICK_PT, Anchor::Start));
     }

@@ -1,21 +1,16 @@
 //! The inside of one fitted window: samples, curves, band names, residuals.
 
 use super::axis::{Axis, Scale};
-use super::canvas::{Anchor, Canvas, Point, Type};
+use super::canvas::{Canvas, Point};
 use super::fit::FitPanel;
 use super::label::{Plan, plan};
 use super::marker::Shape;
 use super::panel::Panel;
-use super::style::{
-    CONTINUUM, DARK, DOTTED, FAINT, MIDDLE, MODEL, PALE, Stroke, TICK_PT, WHITE, series,
-};
-use super::thin::extremes;
+use super::style::{CONTINUUM, DARK, DOTTED, FAINT, MIDDLE, MODEL, PALE, Stroke, WHITE, series};
 use crate::ground::Result;
 
-/// Runs of samples of which the lowest and the highest are shown.
-const BINS: usize = 250;
-/// Most error bars.
-const MOST_BARS: usize = 160;
+/// Most samples that are drawn as points.
+const MOST_POINTS: usize = 400;
 /// Radius of a data point, pt.
 const POINT_PT: f64 = 0.8;
 /// Residuals beyond this many errors are shown at the edge.
@@ -27,6 +22,9 @@ pub(super) struct Cell<'a> {
     pub data: &'a FitPanel,
     pub main: Panel,
     pub residual: Panel,
+    /// Range of the ordinate without the room for band names.
+    pub closed: Axis,
+    pub labels: Plan,
     pub exponent: i32,
     pub y_title: Vec<String>,
 }
@@ -115,9 +113,9 @@ impl Cell<'_> {
     /// Everything inside the main panel.
     pub(super) fn draw_main(&self, canvas: &mut Canvas) {
         let d = self.data;
-        let (labels, main) = self.with_room_for_labels();
+        let main = &self.main;
         for &(from, to) in &d.left_out {
-            hatch(canvas, &main, from, to);
+            hatch(canvas, main, from, to);
         }
         for (k, band) in d.bands.iter().enumerate() {
             let top: Vec<f64> = band
@@ -136,28 +134,38 @@ impl Cell<'_> {
             main.curve(canvas, &d.grid_x, &top, style);
         }
         main.curve(canvas, &d.grid_x, &d.continuum, CONTINUUM);
-        self.samples(canvas, &main);
+        self.samples(canvas);
         main.curve(canvas, &d.grid_x, &d.total, MODEL);
-        self.names(canvas, &main, &labels);
+        self.names(canvas);
     }
 
-    /// The plan of the band names, and the main panel with its range opened upwards for them.
-    fn with_room_for_labels(&self) -> (Plan, Panel) {
-        let named: Vec<(f64, &str)> = self
-            .data
-            .bands
-            .iter()
+    /// Puts both panels at `left`, finds places for the band names and opens the range for them.
+    pub(super) fn place(&mut self, left: f64, width: f64) {
+        for panel in [&mut self.main, &mut self.residual] {
+            panel.left = left;
+            panel.width = width;
+        }
+        let bands = self.data.bands.iter();
+        let named: Vec<(f64, &str)> = bands
             .map(|b| (self.peak_px(&b.y), b.label.as_str()))
             .collect();
-        let labels = plan(&named, self.main.left, self.main.right());
-        let mut main = self.main;
-        main.y = self.opened_range(labels.height_pt);
-        (labels, main)
+        self.labels = plan(&named, left, left + width);
+        self.main.y = self.closed.opened(self.labels.height_pt / self.main.height);
     }
 
-    fn opened_range(&self, label_pt: f64) -> Axis {
-        let share = (label_pt / self.main.height).min(0.6);
-        self.main.y.padded(0.0, share / (1.0 - share))
+    /// The caller's remark and how many bands found no room for their names.
+    pub(super) fn caption(&self) -> String {
+        let given = self.data.caption.trim();
+        let left_out = match self.labels.unplaced {
+            0 => return given.to_owned(),
+            1 => "1 more band not named".to_owned(),
+            n => format!("{n} more bands not named"),
+        };
+        if given.is_empty() {
+            left_out
+        } else {
+            format!("{given}; {left_out}")
+        }
     }
 
     /// Page abscissa of a band's greatest departure from the continuum.
@@ -170,17 +178,16 @@ impl Cell<'_> {
         }
     }
 
-    fn samples(&self, canvas: &mut Canvas, main: &Panel) {
-        let d = self.data;
-        let shown = self.shown(&d.y);
-        let every = shown.len().div_ceil(MOST_BARS).max(1);
-        for (n, &i) in shown.iter().enumerate() {
+    fn samples(&self, canvas: &mut Canvas) {
+        let (d, main) = (self.data, &self.main);
+        self.pale_line(canvas, main, &d.y);
+        for i in self.shown(&d.y) {
             let p = (main.px(d.x[i]), main.py(d.y[i]));
             let s = d.sigma[i];
             if !main.holds(p) {
                 edge_mark(canvas, main, p);
             } else if d.used[i] {
-                let bar = (s > 0.0 && s.is_finite() && n % every == 0)
+                let bar = (s > 0.0 && s.is_finite())
                     .then(|| (main.py_inside(d.y[i] + s), main.py_inside(d.y[i] - s)));
                 data_mark(canvas, p, bar);
             } else {
@@ -189,15 +196,25 @@ impl Cell<'_> {
         }
     }
 
-    /// Indices of the samples to draw for these ordinates.
+    /// Indices of the samples to draw as points: every n-th where there are many.
     fn shown(&self, y: &[f64]) -> Vec<usize> {
-        let kept = extremes(y, BINS);
-        let finite = |&i: &usize| self.data.x[i].is_finite();
-        kept.into_iter().filter(finite).collect()
+        let every = y.len().div_ceil(MOST_POINTS).max(1);
+        let finite = |&i: &usize| self.data.x[i].is_finite() && y[i].is_finite();
+        (0..y.len()).step_by(every).filter(finite).collect()
     }
 
-    fn names(&self, canvas: &mut Canvas, main: &Panel, labels: &Plan) {
-        let d = self.data;
+    /// Where points are left out, a pale line through all used samples shows what they hide.
+    fn pale_line(&self, canvas: &mut Canvas, panel: &Panel, y: &[f64]) {
+        if y.len() <= MOST_POINTS {
+            return;
+        }
+        let used = y.iter().zip(&self.data.used);
+        let used: Vec<f64> = used.map(|(&y, &u)| if u { y } else { f64::NAN }).collect();
+        panel.curve(canvas, &self.data.x, &used, Stroke::solid(PALE, 0.3));
+    }
+
+    fn names(&self, canvas: &mut Canvas) {
+        let (d, main) = (self.data, &self.main);
         let foot = |k: usize| {
             let x = self.peak_px(&d.bands[k].y);
             let near = |px: f64| (px - x).abs() < 2.0;
@@ -209,12 +226,8 @@ impl Cell<'_> {
                 .map(|(_, gy)| main.py_inside(*gy));
             tops.fold(main.bottom(), f64::min) - 2.0
         };
-        labels.draw(canvas, main.top, &foot, &|k| Some(series(k, 0.9)));
-        if labels.unplaced > 0 {
-            let text = format!("{} more bands not named", labels.unplaced);
-            let p = (main.right() - 4.0, main.bottom() - 6.0);
-            canvas.text(&text, p, Type::new(TICK_PT, Anchor::End).colour(DARK));
-        }
+        self.labels
+            .draw(canvas, main.top, &foot, &|k| Some(series(k, 0.9)));
     }
 
     /// Everything inside the residual panel.
@@ -228,6 +241,7 @@ impl Cell<'_> {
         canvas.path(&line(-3.0), DOTTED);
         canvas.path(&line(0.0), Stroke::solid(DARK, 0.5));
         let r: Vec<f64> = (0..d.x.len()).map(|i| residual(d, i)).collect();
+        self.pale_line(canvas, panel, &r);
         for i in self.shown(&r) {
             let p = (panel.px(d.x[i]), panel.py(r[i]));
             if !panel.holds(p) {

@@ -5,13 +5,13 @@ use super::style::{LABEL_PT, Stroke};
 use super::text::{elide, width_pt};
 
 /// Least blank between two labels of one row, pt.
-const GAP_PT: f64 = 3.0;
+const GAP_PT: f64 = 5.0;
 /// Height of a row of level labels with the line sample under it, pt.
 const ROW_PT: f64 = 11.5;
 /// Height in which leaders bend from the label to the place it names, pt.
 const BEND_PT: f64 = 7.0;
 /// Blank above the labels, pt.
-const TOP_PT: f64 = 2.0;
+const TOP_PT: f64 = 4.0;
 /// Labels are shortened to this, pt.
 const LONGEST_PT: f64 = 80.0;
 /// A level row is good enough when no label is moved by more than this, pt.
@@ -213,7 +213,10 @@ impl Plan {
             let start = (p.x, row_end - under);
             let sample = style(p.index);
             self.label(canvas, p, row_top, sample);
-            let colour = sample.map_or(super::style::DARK, |s| s.colour);
+            let leader = match sample {
+                Some(s) => Stroke::solid(s.colour, 0.5),
+                None => Stroke::solid(super::style::MIDDLE, 0.35),
+            };
             let bend_end = bend_top + BEND_PT - 1.0;
             let foot = foot(p.index).max(bend_end);
             let chain: [Point; 4] = [
@@ -222,7 +225,7 @@ impl Plan {
                 (p.named_x, bend_end),
                 (p.named_x, foot),
             ];
-            canvas.path(&chain, Stroke::solid(colour, 0.5));
+            canvas.path(&chain, leader);
         }
     }
 
