@@ -3,7 +3,7 @@
 //! The backend rounds to whole units and knows neither dashes nor physical sizes. One point is
 //! therefore [`UNITS_PER_PT`] units, dashes are cut here, and the root element gets its size in inches.
 
-use super::style::{Colour, Stroke, WHITE};
+use super::style::{Colour, LINE_PT, Stroke, TITLE_PT, WHITE};
 use super::text::clean;
 use plotters::prelude::*;
 use plotters::style::text_anchor::{HPos, Pos, VPos};
@@ -171,6 +171,14 @@ impl Canvas<'_> {
         let radius = units(radius_pt).max(1) as u32;
         let drawn = self.backend.draw_circle(at(centre), radius, &style, false);
         drawn.expect(WRITES);
+    }
+
+    /// Bold lines of a figure's heading, from the given corner downwards.
+    pub(super) fn heading(&mut self, lines: &[String], (left, top): Point) {
+        for (i, line) in lines.iter().enumerate() {
+            let y = top + (i as f64 + 0.5) * (LINE_PT + 1.0);
+            self.text(line, (left, y), Type::new(TITLE_PT, Anchor::Start).bold());
+        }
     }
 
     /// Text whose capitals are centred on the point across the reading direction.

@@ -62,6 +62,8 @@ pub struct Tick {
 }
 
 const EDGE_PT: f64 = 3.0;
+/// Rounds in which margins and ranges settle.
+const ROUNDS: usize = 3;
 /// Height of the frame, pt, unless many curves need more.
 const FRAME_PT: (f64, f64) = (130.0, 190.0);
 /// Length of the line sample beside a name, pt.
@@ -115,47 +117,50 @@ impl<'a> Layout<'a> {
             FRAME_PT.1
         };
         let height = f64::max(wanted, (figure.curves.len() as f64 + 1.0) * NAME_PT);
-        let exponent = y_axis.exponent();
-        let unit = unit_with_power(&figure.y_unit, exponent);
-        let y_title = title_lines(figure.y_quantity.trim(), &unit, height);
-        let y = y_ticks(&y_axis, height, exponent);
-        let left = EDGE_PT + labels_width(&y) + 2.0 + LINE_PT * y_title.len() as f64;
         let short = |c: &Curve| elide(c.label.trim(), LABEL_PT, false, 0.3 * page_width);
         let names: Vec<String> = figure.curves.iter().map(short).collect();
         let widths = names.iter().map(|n| width_pt(n, LABEL_PT, false));
         let right = LEADER_PT + SAMPLE_PT + 4.0 + widths.fold(0.0, f64::max) + EDGE_PT;
-        let mut panel = Panel {
-            left,
-            top,
-            width: page_width - left - right,
-            height,
-            x: x_axis,
-            y: y_axis,
-        };
-        let marks = plan(&named_marks(figure, &panel), panel.left, panel.right());
-        let share = (marks.height_pt / height).min(0.6);
-        panel.y = y_axis.padded(0.0, share / (1.0 - share));
-        Ok(Self {
+        let exponent = y_axis.exponent();
+        let unit = unit_with_power(&figure.y_unit, exponent);
+        let mut layout = Self {
             figure,
             title,
-            x: ticks_of(figure, &panel),
-            y: y_ticks(&panel.y, height, exponent),
-            panel,
-            y_title,
-            marks,
+            panel: Panel {
+                left: EDGE_PT,
+                top,
+                width: page_width - EDGE_PT - right,
+                height,
+                x: x_axis,
+                y: y_axis,
+            },
+            x: Ticks::default(),
+            y: Ticks::default(),
+            y_title: title_lines(figure.y_quantity.trim(), &unit, height),
+            marks: plan(&[], 0.0, 0.0),
             names,
-        })
+        };
+        layout.settle(y_axis, exponent, page_width - right);
+        Ok(layout)
+    }
+
+    /// Names of marks open the range, wider tick labels narrow the frame: a few rounds settle both.
+    fn settle(&mut self, closed: Axis, exponent: i32, right: f64) {
+        for _ in 0..ROUNDS {
+            self.y = y_ticks(&self.panel.y, self.panel.height, exponent);
+            let titles = LINE_PT * self.y_title.len() as f64;
+            self.panel.left = EDGE_PT + labels_width(&self.y) + 2.0 + titles;
+            self.panel.width = right - self.panel.left;
+            let named = named_marks(self.figure, &self.panel);
+            self.marks = plan(&named, self.panel.left, self.panel.right());
+            self.panel.y = closed.opened(self.marks.height_pt / self.panel.height);
+        }
+        self.y = y_ticks(&self.panel.y, self.panel.height, exponent);
+        self.x = ticks_of(self.figure, &self.panel);
     }
 
     fn draw(&self, canvas: &mut Canvas) {
-        for (i, line) in self.title.iter().enumerate() {
-            let y = EDGE_PT + (i as f64 + 0.5) * (LINE_PT + 1.0);
-            canvas.text(
-                line,
-                (EDGE_PT, y),
-                Type::new(TITLE_PT, Anchor::Start).bold(),
-            );
-        }
+        canvas.heading(&self.title, (EDGE_PT, EDGE_PT));
         self.draw_marks(canvas);
         for (k, c) in self.figure.curves.iter().enumerate() {
             self.panel.curve(canvas, &c.x, &c.y, series(k, 1.0));

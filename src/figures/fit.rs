@@ -286,12 +286,8 @@ fn heading(figure: &FitFigure, width: Width) -> Heading {
 
 impl Heading {
     fn draw(&self, canvas: &mut Canvas) {
-        let mut y = EDGE_PT + 0.5 * LINE_PT;
-        for line in &self.title {
-            let how = Type::new(TITLE_PT, Anchor::Start).bold();
-            canvas.text(line, (EDGE_PT, y), how);
-            y += LINE_PT + 1.0;
-        }
+        canvas.heading(&self.title, (EDGE_PT, EDGE_PT));
+        let y = EDGE_PT + (self.title.len() as f64 + 0.5) * (LINE_PT + 1.0);
         let mut x = EDGE_PT;
         self.entry(canvas, (&mut x, y), "data", |c, (x, y)| {
             super::fit_panel::data_mark(c, (x + 5.0, y), Some((y - 3.5, y + 3.5)));

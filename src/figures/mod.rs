@@ -13,6 +13,7 @@ mod curve;
 mod fit;
 mod fit_panel;
 mod label;
+mod lanes;
 mod marker;
 mod panel;
 mod quicklook;

@@ -38,6 +38,8 @@ pub struct Position {
 }
 
 const EDGE_PT: f64 = 3.0;
+/// Rounds in which margins and ranges settle.
+const ROUNDS: usize = 3;
 const RIGHT_PT: f64 = 11.0;
 /// Height of the frame without names, pt, for the two widths.
 const FRAME_PT: (f64, f64) = (120.0, 170.0);
@@ -56,8 +58,9 @@ pub fn quicklook_svg(figure: &QuicklookFigure, width: Width) -> Result<String> {
         )));
     }
     let layout = Layout::new(figure, width)?;
-    let height = layout.panel.bottom() + 2.0 * LINE_PT + 5.0;
-    Ok(page(width.points(), height, |canvas| layout.draw(canvas)))
+    Ok(page(width.points(), layout.height(), |canvas| {
+        layout.draw(canvas)
+    }))
 }
 
 struct Layout<'a> {
@@ -87,45 +90,57 @@ impl<'a> Layout<'a> {
             FRAME_PT.1
         };
         let unit = unit_with_power(&figure.y_unit, exponent);
-        let y_title = title_lines(figure.y_quantity.trim(), &unit, wanted);
-        let labels = labels_width(&y_ticks(&y, wanted, exponent));
-        let left = EDGE_PT + labels + 2.0 + LINE_PT * y_title.len() as f64;
-        let mut panel = Panel {
-            left,
+        let panel = Panel {
+            left: EDGE_PT,
             top: 2.0 * EDGE_PT + title.len() as f64 * (LINE_PT + 1.0),
-            width: width.points() - left - RIGHT_PT,
+            width: width.points() - EDGE_PT - RIGHT_PT,
             height: wanted,
             x,
             y,
         };
         let within = |p: &&Position| (0.0..=1.0).contains(&panel.x.fraction(p.x));
-        let shown: Vec<&Position> = figure.positions.iter().filter(within).collect();
-        let named = |p: &&'a Position| (panel.px(p.x), p.label.as_str());
-        let named: Vec<(f64, &str)> = shown.iter().map(named).collect();
-        let labels = plan(&named, panel.left, panel.right());
-        panel.height += labels.height_pt;
-        let share = labels.height_pt / panel.height;
-        panel.y = panel.y.padded(0.0, share / (1.0 - share));
-        Ok(Self {
+        let mut layout = Self {
             figure,
             title,
-            panel,
-            y_title,
+            y_title: title_lines(figure.y_quantity.trim(), &unit, wanted),
             exponent,
-            shown,
-            labels,
-        })
+            shown: figure.positions.iter().filter(within).collect(),
+            labels: plan(&[], 0.0, 0.0),
+            panel,
+        };
+        layout.settle(y, wanted, width.points() - RIGHT_PT);
+        Ok(layout)
+    }
+
+    /// Names open the range, wider tick labels narrow the frame: a few rounds settle both.
+    fn settle(&mut self, closed: Axis, height: f64, right: f64) {
+        for _ in 0..ROUNDS {
+            let y = y_ticks(&self.panel.y, self.panel.height, self.exponent);
+            let titles = LINE_PT * self.y_title.len() as f64;
+            self.panel.left = EDGE_PT + labels_width(&y) + 2.0 + titles;
+            self.panel.width = right - self.panel.left;
+            let named = self.shown.iter();
+            let named: Vec<(f64, &str)> = named
+                .map(|p| (self.panel.px(p.x), p.label.as_str()))
+                .collect();
+            self.labels = plan(&named, self.panel.left, self.panel.right());
+            self.panel.height = height + self.labels.height_pt;
+            self.panel.y = closed.opened(self.labels.height_pt / self.panel.height);
+        }
+    }
+
+    /// Height of the page, pt.
+    fn height(&self) -> f64 {
+        let remark = if self.labels.unplaced > 0 {
+            LINE_PT
+        } else {
+            0.0
+        };
+        self.panel.bottom() + 2.0 * LINE_PT + 5.0 + remark
     }
 
     fn draw(&self, canvas: &mut Canvas) {
-        for (i, line) in self.title.iter().enumerate() {
-            let y = EDGE_PT + (i as f64 + 0.5) * (LINE_PT + 1.0);
-            canvas.text(
-                line,
-                (EDGE_PT, y),
-                Type::new(TITLE_PT, Anchor::Start).bold(),
-            );
-        }
+        canvas.heading(&self.title, (EDGE_PT, EDGE_PT));
         let panel = &self.panel;
         let zero = panel.y.fraction(0.0);
         if zero > 0.0 && zero < 1.0 {
@@ -138,7 +153,7 @@ impl<'a> Layout<'a> {
         self.labels.draw(canvas, panel.top, &foot, &|_| None);
         if self.labels.unplaced > 0 {
             let text = format!("{} more places not named", self.labels.unplaced);
-            let p = (panel.right() - 4.0, panel.bottom() - 7.0);
+            let p = (panel.right(), self.height() - 0.5 * LINE_PT - 1.0);
             canvas.text(&text, p, Type::new(TICK_PT, Anchor::End).colour(DARK));
         }
         let x = x_ticks(&panel.x, panel.width, 0);

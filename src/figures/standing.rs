@@ -130,10 +130,7 @@ pub fn standing_svg(figure: &StandingFigure, width: Width) -> Result<String> {
         rows.push(row);
     }
     Ok(page(width.points(), y + EDGE_PT, |canvas| {
-        for (i, line) in title.iter().enumerate() {
-            let p = (EDGE_PT, EDGE_PT + (i as f64 + 0.5) * KEY_LINE_PT);
-            canvas.text(line, p, Type::new(TITLE_PT, Anchor::Start).bold());
-        }
+        canvas.heading(&title, (EDGE_PT, EDGE_PT));
         draw_key(canvas, &key, EDGE_PT + title.len() as f64 * KEY_LINE_PT);
         for (i, row) in rows.iter().enumerate() {
             row.draw(canvas, i == 0);

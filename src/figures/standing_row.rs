@@ -2,6 +2,7 @@
 
 use super::axis::{Axis, Scale, Ticks};
 use super::canvas::{Anchor, Canvas, Point, Type};
+use super::lanes::{ARROW_PT, Lanes, MARK_PT, NAME_TYPE_PT, ends, name_place, named};
 use super::marker::{Mark, Shape, arrow};
 use super::panel::{Panel, x_ticks};
 use super::standing::{
@@ -11,19 +12,11 @@ use super::style::{BLACK, DARK, DOTTED, LABEL_PT, LINE_PT, MIDDLE, PALE, Stroke,
 use super::text::{elide, width_pt, wrap};
 use crate::ground::Result;
 
-/// Rows with at most so many comets print their names.
-const NAMED: usize = 8;
 /// Height of the cumulative panel, pt.
 const CUMULATIVE_PT: f64 = 27.0;
 /// Height of the lane of this comet, pt.
 const THIS_PT: f64 = 12.0;
-/// Distance of lanes, pt: without and with names.
-const LANE_PT: (f64, f64) = (4.8, 8.2);
-/// Most height for all lanes together, pt.
-const LANES_PT: f64 = 72.0;
-const MARK_PT: f64 = 1.7;
-const ARROW_PT: f64 = 8.0;
-const NAME_TYPE_PT: f64 = 6.5;
+
 /// How far a bar may widen the range beyond the values, as a factor.
 const BAR_REACH: f64 = 10.0;
 
@@ -35,8 +28,7 @@ pub(super) struct Row<'a> {
     head: Vec<String>,
     cumulative: Option<Panel>,
     strip: Panel,
-    lanes: Vec<usize>,
-    pitch: f64,
+    lanes: Lanes,
 }
 
 impl<'a> Row<'a> {
@@ -51,7 +43,7 @@ impl<'a> Row<'a> {
         };
         let mut panel = Panel {
             left: columns.left,
-            top: top + 4.0 + head_pt,
+            top: top + 5.5 + head_pt,
             width: columns.right - columns.left,
             height: CUMULATIVE_PT,
             x: axis,
@@ -65,10 +57,8 @@ impl<'a> Row<'a> {
         if cumulative.is_some() {
             panel.top += CUMULATIVE_PT;
         }
-        let (lanes, used) = lanes(data, &panel);
-        let wanted = if named(data) { LANE_PT.1 } else { LANE_PT.0 };
-        let pitch = wanted.min(LANES_PT / used.max(1) as f64);
-        panel.height = THIS_PT + pitch * used as f64 + 3.0;
+        let lanes = Lanes::new(data, &panel);
+        panel.height = THIS_PT + lanes.height_pt + 3.0;
         Ok(Self {
             data,
             columns: *columns,
@@ -77,7 +67,6 @@ impl<'a> Row<'a> {
             cumulative,
             strip: panel,
             lanes,
-            pitch,
         })
     }
 
@@ -96,8 +85,8 @@ impl<'a> Row<'a> {
         if let Some(panel) = &self.cumulative {
             self.draw_cumulative(canvas, panel, &ticks, first);
         }
-        for (comet, &lane) in self.data.comets.iter().zip(&self.lanes) {
-            let y = self.strip.top + 3.0 + (lane as f64 + 0.5) * self.pitch;
+        for (comet, &lane) in self.data.comets.iter().zip(&self.lanes.of_comet) {
+            let y = self.strip.top + 3.0 + (lane as f64 + 0.5) * self.lanes.pitch_pt;
             self.draw_comet(canvas, comet, y);
         }
         self.draw_this(canvas);
@@ -156,19 +145,34 @@ impl<'a> Row<'a> {
         };
         panel.frame(canvas, x, &y, false);
         if first {
-            let text = "fraction of comets";
-            let width = width_pt(text, NAME_TYPE_PT, false);
-            let (l, t) = (panel.left + 4.0, panel.top + 4.0);
-            canvas.rectangle((l, t), (l + width + 1.0, t + 7.0), WHITE, 1.0);
-            let how = Type::new(NAME_TYPE_PT, Anchor::Start).colour(DARK);
-            canvas.text(text, (l, t + 3.5), how);
+            self.name_fractions(canvas, panel);
         }
+    }
+
+    /// Names the ordinate in a corner that the steps leave free.
+    fn name_fractions(&self, canvas: &mut Canvas, panel: &Panel) {
+        let text = "fraction of comets";
+        let width = width_pt(text, NAME_TYPE_PT, false);
+        let (mut l, mut t) = (panel.left + 4.0, panel.top + 4.0);
+        let under = |&&(v, _): &&(f64, f64)| panel.px(v) < l + width + 4.0;
+        let steps = self.data.cumulative.iter().filter(under);
+        if steps.map(|s| s.1).fold(0.0, f64::max) > 0.5 {
+            l = panel.right() - 5.0 - width;
+            t = panel.bottom() - 11.5;
+        }
+        canvas.rectangle((l, t), (l + width + 1.0, t + 7.0), WHITE, 1.0);
+        let how = Type::new(NAME_TYPE_PT, Anchor::Start).colour(DARK);
+        canvas.text(text, (l, t + 3.5), how);
     }
 
     fn draw_comet(&self, canvas: &mut Canvas, comet: &ComparisonComet, y: f64) {
         let strip = &self.strip;
         let x = strip.px_inside(comet.value.main());
-        let thin = Stroke::solid(MIDDLE, 0.4);
+        let thin = if self.lanes.crowded {
+            Stroke::solid(PALE, 0.3)
+        } else {
+            Stroke::solid(MIDDLE, 0.4)
+        };
         let mut mark = Mark::of_group(comet.class);
         match comet.value {
             ComparisonValue::Measured { bar, .. } => {
@@ -189,6 +193,8 @@ impl<'a> Row<'a> {
         mark.draw(canvas, (x, y), MARK_PT);
         if named(self.data) {
             let (from, name) = name_place(strip, comet);
+            let end = from + width_pt(&name, NAME_TYPE_PT, false);
+            canvas.rectangle((from, y - 3.5), (end, y + 3.5), WHITE, 1.0);
             let how = Type::new(NAME_TYPE_PT, Anchor::Start).colour(DARK);
             canvas.text(&name, (from, y), how);
         }
@@ -248,12 +254,6 @@ pub(super) fn this_mark(
     mark.draw(canvas, p, 2.6);
 }
 
-/// Ends of a bar on the page; an end that is not a number stays at the mark.
-fn ends(strip: &Panel, bar: Bounds, x: f64) -> (f64, f64) {
-    let place = |v: f64| if v.is_nan() { x } else { strip.px_inside(v) };
-    (place(bar.low).min(x), place(bar.high).max(x))
-}
-
 /// The range of a row: all values, and bars as far as they do not dwarf the values.
 fn range(data: &StandingRow) -> Result<Axis> {
     let values = data.comets.iter().map(|c| c.value.main());
@@ -277,10 +277,6 @@ fn range(data: &StandingRow) -> Result<Axis> {
     Ok(Axis::covering(all, Scale::Log, &what)?.padded(0.06, 0.06))
 }
 
-fn named(data: &StandingRow) -> bool {
-    data.comets.len() <= NAMED
-}
-
 /// Remarks on count and place, broken into lines.
 fn remarks(data: &StandingRow, columns: &Columns) -> Vec<String> {
     if columns.beside {
@@ -294,92 +290,4 @@ fn remarks(data: &StandingRow, columns: &Columns) -> Vec<String> {
     let name = width_pt(data.ratio.trim(), LABEL_PT, true).min(0.45 * columns.page);
     let room = columns.right - EDGE_PT - name - 10.0;
     wrap(&parts.join("; "), TICK_PT, false, room, 2)
-}
-
-/// Where a comet's name starts, right of its bar or left of it where there is more room, and as much
-/// of the name as fits.
-fn name_place(strip: &Panel, comet: &ComparisonComet) -> (f64, String) {
-    let (low, high) = extent(strip, comet, true);
-    let (before, after) = (
-        low - 2.0 - strip.left - 2.0,
-        strip.right() - 2.0 - high - 2.0,
-    );
-    let whole = width_pt(comet.name.trim(), NAME_TYPE_PT, false);
-    let room = if whole <= after {
-        after
-    } else {
-        before.max(after)
-    };
-    let name = elide(comet.name.trim(), NAME_TYPE_PT, false, room);
-    if whole <= after || after >= before {
-        return (high + 2.0, name);
-    }
-    (low - 2.0 - width_pt(&name, NAME_TYPE_PT, false), name)
-}
-
-/// What a comet covers along its lane, pt.
-fn extent(strip: &Panel, comet: &ComparisonComet, with_bar: bool) -> (f64, f64) {
-    let x = strip.px_inside(comet.value.main());
-    let r = 1.4 * MARK_PT;
-    match comet.value {
-        ComparisonValue::Measured { bar, .. } if with_bar => {
-            let (a, b) = ends(strip, bar, x);
-            (a.min(x - r), b.max(x + r))
-        }
-        ComparisonValue::Measured { .. } => (x - r, x + r),
-        ComparisonValue::UpperLimit(_) => (x - ARROW_PT, x + r),
-        ComparisonValue::LowerLimit(_) => (x - r, x + ARROW_PT),
-    }
-}
-
-/// The lane of each comet and how many lanes there are. Bars keep clear of each other where that
-/// takes little room, otherwise only the marks do.
-fn lanes(data: &StandingRow, strip: &Panel) -> (Vec<usize>, usize) {
-    let spans = |with_bar: bool| -> Vec<(f64, f64)> {
-        let span = |c: &ComparisonComet| {
-            let (mut low, mut high) = extent(strip, c, with_bar);
-            if named(data) {
-                let (from, name) = name_place(strip, c);
-                low = low.min(from);
-                high = high.max(from + width_pt(&name, NAME_TYPE_PT, false));
-            }
-            (low, high)
-        };
-        data.comets.iter().map(span).collect()
-    };
-    let clear = pack(&spans(true));
-    if named(data) || clear.1 as f64 * LANE_PT.0 <= LANES_PT {
-        return clear;
-    }
-    pack(&spans(false))
-}
-
-/// Puts intervals into as few lanes as possible so that none touch.
-fn pack(spans: &[(f64, f64)]) -> (Vec<usize>, usize) {
-    let mut order: Vec<usize> = (0..spans.len()).collect();
-    order.sort_by(|&a, &b| spans[a].0.total_cmp(&spans[b].0));
-    let mut taken_to: Vec<f64> = Vec::new();
-    let mut lanes = vec![0; spans.len()];
-    for i in order {
-        let free = taken_to.iter().position(|&to| to + 1.0 < spans[i].0);
-        let lane = free.unwrap_or_else(|| {
-            taken_to.push(0.0);
-            taken_to.len() - 1
-        });
-        taken_to[lane] = spans[i].1;
-        lanes[i] = lane;
-    }
-    (lanes, taken_to.len())
-}
-
-#[cfg(test)]
-mod tests {
-    use super::*;
-
-    #[test]
-    fn intervals_share_lanes_only_when_apart() {
-        let (lanes, used) = pack(&[(0.0, 10.0), (5.0, 8.0), (12.0, 20.0), (30.0, 31.0)]);
-        assert_eq!((lanes, used), (vec![0, 1, 0, 0], 2));
-        assert_eq!(pack(&[]), (vec![], 0));
-    }
 }

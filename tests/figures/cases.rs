@@ -174,7 +174,7 @@ fn fit_cases() -> Vec<Case> {
                 "Wavelength (µm)",
                 "10⁻¹⁵",
                 "not fitted",
-                "Δ / σ",
+                "Residual",
                 "X/2031 D1",
             ],
             |w| fit_svg(&fit_figure(vec![one_window()]), w),

@@ -11,6 +11,10 @@ pub struct Page {
     pub height_in: f64,
     pub points: Vec<(f64, f64)>,
     pub texts: Vec<TextBox>,
+    /// Centres of filled circles.
+    pub discs: Vec<(f64, f64)>,
+    /// Open chains of lines.
+    pub chains: Vec<Vec<(f64, f64)>>,
 }
 
 /// A piece of text with its place.
@@ -56,7 +60,15 @@ impl Page {
                 page = Some(root(&attributes));
             }
             let page = page.as_mut().expect("a root element");
-            page.points.extend(geometry(&name, &attributes));
+            let points = geometry(&name, &attributes);
+            if name == "circle" && attributes["fill"] != "none" {
+                let centre = (points[0].0 + points[1].0, points[0].1 + points[1].1);
+                page.discs.push((0.5 * centre.0, 0.5 * centre.1));
+            }
+            page.points.extend(&points);
+            if name == "polyline" {
+                page.chains.push(points);
+            }
             if !alone {
                 open.push((name, attributes));
             }
@@ -79,6 +91,8 @@ fn root(a: &Attributes) -> Page {
         height_in: inches("height"),
         points: Vec::new(),
         texts: Vec::new(),
+        discs: Vec::new(),
+        chains: Vec::new(),
     }
 }
 
@@ -199,6 +213,12 @@ impl TextBox {
             let left = self.x - before;
             (left, self.y - up, left + length, self.y + down)
         }
+    }
+
+    /// Middle of the capitals of level text.
+    pub fn middle(&self) -> (f64, f64) {
+        let (left, _, right, _) = self.corners();
+        (0.5 * (left + right), self.y - 0.365 * self.size)
     }
 
     pub fn overlaps(&self, other: &Self) -> bool {
