@@ -195,7 +195,7 @@ fn curves_and_single_samples_stand_where_the_ticks_say() {
     }];
     let page = Page::parse(&quicklook_svg(&one, Width::Double).expect("a figure"));
     let (px, py) = page.discs[0];
-    assert!(near(px, tick(&page, "5000").0) && near(py, tick(&page, "2.0").1));
+    assert!(near(px, tick(&page, "5000").0) && near(py, tick(&page, "2.00").1));
 }
 
 #[test]

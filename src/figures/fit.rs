@@ -69,7 +69,9 @@ const RIGHT_PT: f64 = 11.0;
 /// Blank between main and residual panel, pt.
 const BETWEEN_PT: f64 = 3.0;
 /// Height of the tick labels under a panel, pt.
-const TICKS_PT: f64 = 11.0;
+const TICKS_PT: f64 = 12.0;
+/// Share of a panel that band names may take before the panel grows.
+const NAMES_SHARE: f64 = 0.35;
 /// Rounds in which margins and ranges settle.
 const ROUNDS: usize = 3;
 /// Height to which a page is filled where the windows are many, pt.
@@ -166,55 +168,59 @@ fn sizes(figure: &FitFigure, width: Width) -> Sizes {
     }
 }
 
-/// Places the panels; the left margin is that of the widest labels in the column.
+/// Places the panels. Band names open the range and the panel, which can make tick labels wider and
+/// so the panel narrower; a few rounds settle that.
 fn cells<'a>(figure: &'a FitFigure, sizes: &Sizes, top: f64) -> Result<Vec<Cell<'a>>> {
-    let mut cells = Vec::new();
-    for (i, data) in figure.panels.iter().enumerate() {
-        let row = (i / sizes.columns) as f64;
-        let rows_top = top + row * row_height(sizes);
-        let left = (i % sizes.columns) as f64 * sizes.cell_width;
-        cells.push(cell(figure, data, sizes, (left, rows_top + sizes.caption))?);
-    }
-    for column in 0..sizes.columns {
-        let mine = || (column..figure.panels.len()).step_by(sizes.columns);
-        // Band names open the range, which can make tick labels wider; a few rounds settle that.
-        for _ in 0..ROUNDS {
-            let margin = mine().map(|i| cells[i].margin_pt()).fold(0.0, f64::max);
-            for i in mine() {
-                cells[i].place(
-                    column as f64 * sizes.cell_width + EDGE_PT + margin,
-                    sizes.cell_width - EDGE_PT - margin - RIGHT_PT,
-                );
+    let panels = figure.panels.iter();
+    let mut cells = panels
+        .map(|data| cell(figure, data, sizes))
+        .collect::<Result<Vec<Cell>>>()?;
+    for _ in 0..ROUNDS {
+        for column in 0..sizes.columns {
+            set_column(&mut cells, column, sizes);
+        }
+        let mut y = top;
+        for row in cells.chunks_mut(sizes.columns) {
+            let names = row.iter().map(|c| c.labels.height_pt);
+            let extra = (names.fold(0.0, f64::max) - NAMES_SHARE * sizes.main).max(0.0);
+            for cell in row {
+                cell.stand(y + sizes.caption, sizes.main + extra, BETWEEN_PT);
             }
+            y += row_height(sizes) + extra;
         }
     }
     Ok(cells)
+}
+
+/// Gives all panels of a column the left margin of the widest labels.
+fn set_column(cells: &mut [Cell], column: usize, sizes: &Sizes) {
+    let mine = || (column..cells.len()).step_by(sizes.columns);
+    let margin = mine().map(|i| cells[i].margin_pt()).fold(0.0, f64::max);
+    let left = column as f64 * sizes.cell_width + EDGE_PT + margin;
+    let width = sizes.cell_width - EDGE_PT - margin - RIGHT_PT;
+    for cell in cells.iter_mut().skip(column).step_by(sizes.columns) {
+        cell.place(left, width);
+    }
 }
 
 fn row_height(sizes: &Sizes) -> f64 {
     sizes.caption + sizes.main + BETWEEN_PT + sizes.residual + TICKS_PT + 6.0
 }
 
-fn cell<'a>(
-    figure: &FitFigure,
-    data: &'a FitPanel,
-    sizes: &Sizes,
-    (left, top): (f64, f64),
-) -> Result<Cell<'a>> {
+fn cell<'a>(figure: &FitFigure, data: &'a FitPanel, sizes: &Sizes) -> Result<Cell<'a>> {
     let x = data.x.iter().chain(&data.grid_x).copied();
     let x = Axis::covering(x, Scale::Linear, "abscissa of a fitted window")?.padded(0.01, 0.01);
     let y = super::fit_panel::flux_range(data)?;
     let exponent = y.exponent();
     let main = Panel {
-        left,
-        top,
+        left: 0.0,
+        top: 0.0,
         width: sizes.cell_width,
         height: sizes.main,
         x,
         y,
     };
     let residual = Panel {
-        top: top + sizes.main + BETWEEN_PT,
         height: sizes.residual,
         y: super::fit_panel::residual_range(data),
         ..main
@@ -225,7 +231,7 @@ fn cell<'a>(
         main,
         residual,
         closed: y,
-        labels: super::label::plan(&[], left, left),
+        labels: super::label::plan(&[], 0.0, 0.0),
         exponent,
         y_title: title_lines(figure.y_quantity.trim(), &unit, sizes.main),
     })

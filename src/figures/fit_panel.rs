@@ -11,6 +11,8 @@ use crate::ground::Result;
 
 /// Most samples that are drawn as points.
 const MOST_POINTS: usize = 400;
+/// Share of its peak below which a band's line is not drawn.
+const WEAK: f64 = 0.01;
 /// Radius of a data point, pt.
 const POINT_PT: f64 = 0.8;
 /// Residuals beyond this many errors are shown at the edge.
@@ -125,13 +127,14 @@ impl Cell<'_> {
                 .map(|(b, c)| b + c)
                 .collect();
             let style = series(k, 0.9);
+            let line = self.where_strong(&band.y, &top);
             main.fill_between(
                 canvas,
                 &d.grid_x,
                 (&d.continuum, &top),
                 (style.colour, 0.16),
             );
-            main.curve(canvas, &d.grid_x, &top, style);
+            main.curve(canvas, &d.grid_x, &line, style);
         }
         main.curve(canvas, &d.grid_x, &d.continuum, CONTINUUM);
         self.samples(canvas);
@@ -139,7 +142,7 @@ impl Cell<'_> {
         self.names(canvas);
     }
 
-    /// Puts both panels at `left`, finds places for the band names and opens the range for them.
+    /// Puts both panels at `left` and finds places for the band names.
     pub(super) fn place(&mut self, left: f64, width: f64) {
         for panel in [&mut self.main, &mut self.residual] {
             panel.left = left;
@@ -150,7 +153,15 @@ impl Cell<'_> {
             .map(|b| (self.peak_px(&b.y), b.label.as_str()))
             .collect();
         self.labels = plan(&named, left, left + width);
-        self.main.y = self.closed.opened(self.labels.height_pt / self.main.height);
+    }
+
+    /// Puts the main panel of this height at `top`, the residuals under it, and opens the range of the
+    /// main panel for the band names.
+    pub(super) fn stand(&mut self, top: f64, main_height: f64, between: f64) {
+        self.main.top = top;
+        self.main.height = main_height;
+        self.residual.top = top + main_height + between;
+        self.main.y = self.closed.opened(self.labels.height_pt / main_height);
     }
 
     /// The caller's remark and how many bands found no room for their names.
@@ -176,6 +187,15 @@ impl Cell<'_> {
             Some(i) => self.main.px_inside(self.data.grid_x[i]),
             None => self.main.left + 0.5 * self.main.width,
         }
+    }
+
+    /// The curve where the band is more than [`WEAK`] of its peak, so that lines of many bands do not
+    /// hide the continuum.
+    fn where_strong(&self, band: &[f64], curve: &[f64]) -> Vec<f64> {
+        let sizes = band.iter().map(|v| v.abs()).filter(|v| v.is_finite());
+        let least = WEAK * sizes.fold(0.0, f64::max);
+        let strong = |(b, c): (&f64, &f64)| if b.abs() > least { *c } else { f64::NAN };
+        band.iter().zip(curve).map(strong).collect()
     }
 
     fn samples(&self, canvas: &mut Canvas) {

@@ -200,7 +200,7 @@ impl Panel {
 
     /// A label under the frame.
     pub(super) fn x_label(&self, canvas: &mut Canvas, v: f64, label: &str) {
-        let p = (self.px_inside(v), self.bottom() + LABEL_GAP_PT + 4.0);
+        let p = (self.px_inside(v), self.bottom() + LABEL_GAP_PT + 4.8);
         canvas.text(label, p, Type::new(TICK_PT, Anchor::Middle));
     }
 
