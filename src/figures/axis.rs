@@ -186,7 +186,8 @@ impl Axis {
             (self.lo / step - slack).ceil(),
             (self.hi / step + slack).floor(),
         );
-        if !(to - from <= 1000.0) || !step.is_normal() {
+        let few = to - from <= 1000.0;
+        if !few || !step.is_normal() {
             return Vec::new();
         }
         let count = (to - from).max(-1.0) as i64 + 1;

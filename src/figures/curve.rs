@@ -178,12 +178,7 @@ impl<'a> Layout<'a> {
         let top = panel.top + self.marks.height_pt;
         for m in inside(self.figure, panel) {
             let x = panel.px_inside(m.x);
-            let from = if m.label.trim().is_empty() {
-                panel.top
-            } else {
-                top
-            };
-            canvas.path(&[(x, from), (x, panel.bottom())], DOTTED);
+            canvas.path(&[(x, top), (x, panel.bottom())], DOTTED);
         }
         self.marks.draw(canvas, panel.top, &|_| top, &|_| None);
     }

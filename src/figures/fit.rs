@@ -70,6 +70,10 @@ const RIGHT_PT: f64 = 11.0;
 const BETWEEN_PT: f64 = 3.0;
 /// Height of the tick labels under a panel, pt.
 const TICKS_PT: f64 = 12.0;
+/// Residual panels lower than this get a shorter name, pt.
+const SHORT_PT: f64 = 35.0;
+/// How far the name of an ordinate may reach beyond its panel, both ends together, pt.
+const OVERHANG_PT: f64 = 10.0;
 /// Share of a panel that band names may take before the panel grows.
 const NAMES_SHARE: f64 = 0.35;
 /// Rounds in which margins and ranges settle.
@@ -89,7 +93,7 @@ struct Sizes {
 
 /// Draws the fitted windows: data, continuum, bands and total model above, residuals in units of the
 /// errors below. Of more than 400 samples only every n-th is a point with an error bar, over a pale
-/// line through the extremes of all. Two columns when there are several windows and the figure is [`Width::Double`].
+/// line through the extremes of all; `Δ/σ` names (data − model)/σ in low panels. Two columns when there are several windows and the figure is [`Width::Double`].
 ///
 /// # Errors
 /// No window; lengths that disagree; no finite value to draw; ranges beyond double precision.
@@ -233,7 +237,7 @@ fn cell<'a>(figure: &FitFigure, data: &'a FitPanel, sizes: &Sizes) -> Result<Cel
         closed: y,
         labels: super::label::plan(&[], 0.0, 0.0),
         exponent,
-        y_title: title_lines(figure.y_quantity.trim(), &unit, sizes.main),
+        y_title: title_lines(figure.y_quantity.trim(), &unit, sizes.main + OVERHANG_PT),
     })
 }
 
@@ -241,12 +245,15 @@ impl Cell<'_> {
     /// Room for labels and name of the ordinate, pt.
     fn margin_pt(&self) -> f64 {
         let main = labels_width(&y_ticks(&self.main.y, self.main.height, self.exponent));
-        let residual = labels_width(&y_ticks(&self.residual.y, self.residual.height, 0));
+        let residual = labels_width(&super::fit_panel::residual_ticks(&self.residual));
         let lines = self.y_title.len().max(self.residual_title().len());
         main.max(residual) + 2.0 + LINE_PT * lines as f64
     }
 
     fn residual_title(&self) -> Vec<String> {
+        if self.residual.height < SHORT_PT {
+            return vec!["Δ/σ".to_owned()];
+        }
         title_lines("Residual", "(σ)", self.residual.height)
     }
 
@@ -254,7 +261,7 @@ impl Cell<'_> {
     fn draw(&self, canvas: &mut Canvas, x_label: Option<&str>) {
         let x = x_ticks(&self.main.x, self.main.width, 0);
         let y = y_ticks(&self.main.y, self.main.height, self.exponent);
-        let r = y_ticks(&self.residual.y, self.residual.height, 0);
+        let r = super::fit_panel::residual_ticks(&self.residual);
         self.draw_main(canvas);
         self.draw_residuals(canvas);
         self.main.frame(canvas, &x, &y, false);

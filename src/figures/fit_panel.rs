@@ -1,11 +1,11 @@
 //! The inside of one fitted window: samples, curves, band names, residuals.
 
-use super::axis::{Axis, Scale};
+use super::axis::{Axis, Scale, Ticks};
 use super::canvas::{Canvas, Point};
 use super::fit::FitPanel;
 use super::label::{Plan, plan};
 use super::marker::Shape;
-use super::panel::Panel;
+use super::panel::{Panel, y_ticks};
 use super::style::{CONTINUUM, DARK, DOTTED, FAINT, MIDDLE, MODEL, PALE, Stroke, WHITE, series};
 use crate::ground::Result;
 
@@ -66,6 +66,19 @@ pub(super) fn residual_range(p: &FitPanel) -> Axis {
         lo: -most,
         hi: most,
         scale: Scale::Linear,
+    }
+}
+
+/// Ticks of the residuals: round numbers, or only −3, 0, 3 in a low panel.
+pub(super) fn residual_ticks(panel: &Panel) -> Ticks {
+    let ticks = y_ticks(&panel.y, panel.height, 0);
+    if ticks.major.len() >= 3 || panel.height * panel.y.fraction(3.0 + panel.y.lo) < 7.5 {
+        return ticks;
+    }
+    let major = [(-3.0, "−3"), (0.0, "0"), (3.0, "3")];
+    Ticks {
+        major: major.map(|(v, text)| (v, text.to_owned())).to_vec(),
+        minor: Vec::new(),
     }
 }
 
