@@ -289,7 +289,7 @@ mod tests {
         assert_eq!(labels(&t), ["0.01", "0.1", "1", "10"]);
         assert_eq!(t.minor.len(), 28);
         let axis = Axis::covering([1.1e-9, 7e-3], Scale::Log, "x").expect("a range");
-        let t = axis.ticks(60.0, 0, 20.0, &|_| 20.0);
+        let t = axis.ticks(80.0, 0, 20.0, &|_| 20.0);
         assert_eq!(labels(&t), ["10⁻⁸", "10⁻⁶", "10⁻⁴"]);
         let axis = Axis::covering([1.1, 1.3], Scale::Log, "x").expect("a range");
         assert!(axis.ticks(100.0, 0, 25.0, &|_| 15.0).major.len() >= 2);
