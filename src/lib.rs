@@ -12,6 +12,7 @@
 //! the readers. Every dimensional field carries its unit as a suffix.
 
 pub mod coma;
+pub mod figures;
 pub mod fit;
 pub mod frame;
 pub mod ground;

@@ -1,0 +1,33 @@
+//! Floor 8, an edge: figures for print. Plain structs go in, SVG text comes out.
+//!
+//! May import `ground` only; whoever calls translates results into the structs here, in the units
+//! that are to be shown. Never opens a file, never needs a system font or library: text is measured
+//! with a table of advance widths kept beside the code.
+//!
+//! Every figure comes in the two widths of a journal page ([`Width`]); type is 7–8 pt at that size.
+//! Series differ by dash pattern, marker shape and grey level as well as by colour.
+
+mod axis;
+mod canvas;
+mod curve;
+mod fit;
+mod fit_panel;
+mod label;
+mod lanes;
+mod marker;
+mod panel;
+mod quicklook;
+mod standing;
+mod standing_row;
+mod style;
+mod text;
+mod thin;
+
+pub use axis::Scale;
+pub use curve::{Curve, CurveFigure, Tick, VerticalMark, range_svg};
+pub use fit::{FitBand, FitFigure, FitPanel, fit_svg};
+pub use quicklook::{Position, QuicklookFigure, quicklook_svg};
+pub use standing::{
+    Bounds, ComparisonComet, ComparisonValue, StandingFigure, StandingRow, ThisComet, standing_svg,
+};
+pub use style::Width;
