@@ -4,6 +4,7 @@
 
 mod aperture;
 mod geometry;
+pub mod orbit;
 mod rest;
 
 pub use aperture::{Aperture, km_per_arcsec};
