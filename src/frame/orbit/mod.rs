@@ -26,6 +26,8 @@
 mod elements;
 mod kepler;
 mod observe;
+#[cfg(test)]
+mod properties;
 mod site;
 mod state;
 mod stumpff;

@@ -234,3 +234,7 @@ impl SkyPlane {
         angle.to_degrees().rem_euclid(360.0) % 360.0
     }
 }
+
+#[cfg(test)]
+#[path = "observe_tests.rs"]
+mod tests;

@@ -97,6 +97,34 @@ mod tests {
     }
 
     #[test]
+    fn the_zenith_of_the_equator_has_the_local_sidereal_time() {
+        let when = Instant::parse("2031-03-14T05:00", Scale::Utc).unwrap();
+        let (place, swing) = Site::new(25.0, 0.0, 0.0)
+            .unwrap()
+            .geocentric(&when)
+            .unwrap();
+        let (tt, ut) = (when.two_part(Scale::Tt), when.two_part(Scale::Utc));
+        // To the equator and equinox of date, where sidereal time counts.
+        let rows = pnp::pnm06a(tt.0, tt.1);
+        let to_date = Matrix3::from_fn(|i, j| rows[i][j]);
+        let zenith = to_date * place;
+        let sidereal = sofars::erst::gst06a(ut.0, ut.1, tt.0, tt.1) + 25_f64.to_radians();
+        let miss = (zenith.y.atan2(zenith.x) - sidereal).sin();
+        assert!(
+            miss.abs() < 1e-9 && zenith.x * sidereal.cos() > 0.0,
+            "{miss}"
+        );
+        // The swing is the change of place in a second.
+        let next = when.later_s(1.0).unwrap();
+        let (later, _) = Site::new(25.0, 0.0, 0.0)
+            .unwrap()
+            .geocentric(&next)
+            .unwrap();
+        let change = (later - place) * 86_400.0;
+        assert!((change - swing).norm() < 1e-4 * swing.norm());
+    }
+
+    #[test]
     fn refuses_places_off_the_earth() {
         assert!(Site::new(400.0, 0.0, 0.0).is_err());
         assert!(Site::new(0.0, -91.0, 0.0).is_err());

@@ -110,6 +110,20 @@ impl Instant {
         Self::from_jd(self.tt.0, self.tt.1 + seconds / SECONDS_PER_DAY, Scale::Tt)
     }
 
+    /// The middle of an exposure that began at this moment.
+    ///
+    /// # Errors
+    /// An exposure that is negative or longer than 30 days.
+    pub fn mid_exposure(&self, exposure_s: f64) -> Result<Self> {
+        if !(0.0..=30.0 * SECONDS_PER_DAY).contains(&exposure_s) {
+            return Err(Error::plan(format!(
+                "exposure_s = {exposure_s} is outside 0 to {} s",
+                30.0 * SECONDS_PER_DAY
+            )));
+        }
+        self.later_s(0.5 * exposure_s)
+    }
+
     /// Julian date in a scale, good to about 40 µs. UTC before 1960 is given as TAI.
     pub fn jd(&self, scale: Scale) -> f64 {
         let (day, part) = self.two_part(scale);
@@ -309,5 +323,7 @@ mod tests {
         let stepped = start.later_s(61.0).unwrap();
         assert!((stepped.jd(Scale::Tt) - after.jd(Scale::Tt)).abs() < 1e-9);
         assert!(start.later_s(f64::NAN).is_err());
+        assert_eq!(start.mid_exposure(122.0).unwrap(), stepped);
+        assert!(start.mid_exposure(-1.0).is_err());
     }
 }
