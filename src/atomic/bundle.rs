@@ -49,6 +49,7 @@ const BUNDLED: &[(&str, &[u8])] = bundled![
     "atoms/v_i_levels.csv",
     "atoms/v_i_lines.csv",
     "molecules/cn_ground_state.csv",
+    "molecules/cn_red_bands.csv",
     "molecules/cn_violet_lines.csv",
     "molecules/infrared_bands.csv",
     "solar/astm_e490.csv",

@@ -8,6 +8,8 @@ mod atoms;
 mod bands;
 mod bundle;
 mod cn;
+mod cn_ground;
+mod cn_red;
 mod quality;
 mod sun;
 mod system;

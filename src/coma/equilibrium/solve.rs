@@ -9,8 +9,13 @@ use crate::ground::constants::HC_ERG_AA;
 use crate::ground::{Caveat, Error, Result, air_from_vacuum_aa};
 use std::sync::Arc;
 
-/// Share of the population in levels without a way down above which a caveat is given.
-const STRANDED_SHARE: f64 = 0.03;
+/// Share of the population in contested levels above which a caveat is given.
+const CONTESTED_SHARE: f64 = 0.03;
+/// A of a magnetic dipole line per cm⁻¹ cubed, for a line strength of one Bohr magneton squared per
+/// unit of statistical weight: 64π⁴ μ_B²/3h, s⁻¹ cm³.
+const M1_PER_S_CM3: f64 = 2.697e-11;
+/// Share of the rate out of a level from which an untabulated decay would matter.
+const MATTERS: f64 = 0.1;
 
 /// Steady state of a species in sunlight: Σ rates = 0 for every level, Σ x = 1, with upward rate
 /// (g_u/g_l) A n̄ and downward rate A (1 + n̄); g of a line is x_u A.
@@ -24,6 +29,7 @@ pub struct Equilibrium {
     dropped: Vec<Dropped>,
     relaxation_s: f64,
     stranded: f64,
+    contested: f64,
     absorbed_erg_s: f64,
     emitted_erg_s: f64,
     caveats: Vec<Caveat>,
@@ -42,15 +48,16 @@ impl Equilibrium {
         let solved = populations(system, &rates)?;
         let lines = lines(system, field, at, &solved.populations);
         let (absorbed_erg_s, emitted_erg_s) = energy(system, &rates, &solved.populations);
-        let stranded = stranded(system, &solved.populations);
+        let (stranded, contested) = stranded(system, &rates, &solved.populations);
         let mut caveats = system.caveats().to_vec();
-        caveats.extend(doubts(system, &solved, stranded));
+        caveats.extend(doubts(system, &solved, contested));
         Ok(Self {
             populations: solved.populations,
             lines,
             dropped: solved.dropped,
             relaxation_s: solved.relaxation_s,
             stranded,
+            contested,
             absorbed_erg_s,
             emitted_erg_s,
             caveats,
@@ -113,6 +120,14 @@ impl Equilibrium {
     /// Share of the population in excited levels from which no transition downwards is tabulated.
     pub fn stranded(&self) -> f64 {
         self.stranded
+    }
+
+    /// The part of [`Equilibrium::stranded`] for which that may matter: levels that a magnetic dipole
+    /// line of typical strength down to the ground level, A = 2.7e-11 ν̃³ s⁻¹, would empty at 10 % or
+    /// more of the rate at which sunlight does. Low fine-structure levels do not count: their decay is
+    /// slow. An upper bound, since most such decays are slower than this.
+    pub fn contested(&self) -> f64 {
+        self.contested
     }
 
     /// Power absorbed from the field, erg s⁻¹ per atom.
@@ -185,7 +200,10 @@ fn lines(
             kind: line.kind,
             g_photons_s,
             g_erg_s: g_photons_s * HC_ERG_AA / vacuum_aa,
-            relative_sigma: line.sigma_ln_a.hypot(field.relative_sigma(vacuum_aa, at)),
+            relative_sigma: line
+                .sigma_ln_a
+                .hypot(field.relative_sigma(vacuum_aa, at))
+                .hypot(system.model_sigma()),
             source: Arc::clone(&line.source),
         }
     };
@@ -202,24 +220,36 @@ fn energy(system: &LevelSystem, rates: &[Rates], populations: &[f64]) -> (f64, f
     (absorbed, emitted)
 }
 
-fn stranded(system: &LevelSystem, populations: &[f64]) -> f64 {
+fn stranded(system: &LevelSystem, rates: &[Rates], populations: &[f64]) -> (f64, f64) {
     let mut decays = vec![false; populations.len()];
-    for line in system.lines() {
+    let mut pumped_per_s = vec![0.0; populations.len()];
+    for (line, rate) in system.lines().iter().zip(rates) {
         decays[line.upper] = true;
+        pumped_per_s[line.lower] += rate.up_per_s;
     }
-    let without = decays.iter().zip(populations).skip(1);
-    without.filter(|(d, _)| !**d).map(|(_, x)| x).sum()
+    let (mut stranded, mut contested) = (0.0, 0.0);
+    for (i, x) in populations.iter().enumerate().skip(1) {
+        if decays[i] {
+            continue;
+        }
+        stranded += x;
+        let decay_per_s = M1_PER_S_CM3 * system.levels()[i].energy_cm1.powi(3);
+        if decay_per_s > MATTERS * pumped_per_s[i] {
+            contested += x;
+        }
+    }
+    (stranded, contested)
 }
 
-fn doubts(system: &LevelSystem, solved: &Solved, stranded: f64) -> Vec<Caveat> {
+fn doubts(system: &LevelSystem, solved: &Solved, contested: f64) -> Vec<Caveat> {
     let species = system.species();
     let mut caveats = Vec::new();
-    if stranded > STRANDED_SHARE {
+    if contested > CONTESTED_SHARE {
         caveats.push(Caveat::Other {
             code: "levels-without-decay",
             text: format!(
-                "{species}: {:.0} % of the atoms sit in excited levels without a tabulated way down; every g of this species depends on decays that are not in the tables",
-                100.0 * stranded
+                "{species}: {:.0} % of the atoms sit in excited levels without a tabulated way down, where an untabulated decay could compete with sunlight; lines from those levels may be too bright and the others too faint by that share",
+                100.0 * contested
             ),
         });
     }
