@@ -4,7 +4,7 @@ use comagauge::atomic::{
     LevelSystem, LineKind, atom, bundled_atoms, cn_violet, infrared_bands, sun,
 };
 use comagauge::coma::equilibrium::{
-    Conditions, Equilibrium, LineG, SolarField, infrared_g, swings_curve,
+    Conditions, Equilibrium, LineG, SolarField, infrared_g, spread, swings_curve,
 };
 use comagauge::ground::Species;
 use serde::Deserialize;
@@ -211,6 +211,33 @@ fn populations_and_energy_are_conserved_everywhere() {
             solved.relaxation_s()
         );
     }
+}
+
+#[test]
+fn errors_of_iron_lines_follow_their_data() {
+    let system = load("Fe I");
+    let field = sunlight();
+    let there = at(1.0, -20.0);
+    let solved = Equilibrium::solve(&system, &field, &there).unwrap();
+    let drawn = spread(&system, &field, &there, 48, 11).unwrap();
+    for line in solved.brightest(10) {
+        let sigma = drawn.relative_sigma(line.line);
+        println!(
+            "Fe I {:.2} Å: g {:.2e} ± {:.0} %, first estimate {:.0} %",
+            line.wavelength_air_aa,
+            line.g_photons_s,
+            100.0 * sigma,
+            100.0 * line.relative_sigma
+        );
+        // No line is better than half its own A, none of the bright ones worse than a factor two.
+        assert!(sigma > 0.5 * system.lines()[line.line].sigma_ln_a && sigma < 0.69);
+    }
+    let mean = |i: usize| {
+        let sum: f64 = drawn.g_photons_s.iter().map(|g| g[i]).sum();
+        sum / drawn.g_photons_s.len() as f64
+    };
+    let brightest = solved.brightest(1)[0];
+    assert!((mean(brightest.line) / brightest.g_photons_s - 1.0).abs() < 0.2);
 }
 
 #[derive(Deserialize)]

@@ -18,6 +18,7 @@
 //! ```
 
 mod chain;
+mod doubts;
 mod draws;
 mod field;
 mod infrared;

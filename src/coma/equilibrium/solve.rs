@@ -1,21 +1,14 @@
 //! Populations and line efficiencies in steady state.
 
 use super::chain::Chain;
+use super::doubts::{doubts, slow, stranded};
 use super::field::{Conditions, SolarField};
 use super::network::{Rates, connected, matrix, rates};
 use super::result::{BandG, Dropped, LineG};
 use crate::atomic::{LevelSystem, LineKind};
 use crate::ground::constants::HC_ERG_AA;
-use crate::ground::{Caveat, Error, Result, air_from_vacuum_aa};
+use crate::ground::{Caveat, Error, Result, Species, air_from_vacuum_aa};
 use std::sync::Arc;
-
-/// Share of the population in contested levels above which a caveat is given.
-const CONTESTED_SHARE: f64 = 0.03;
-/// A of a magnetic dipole line per cm⁻¹ cubed, for a line strength of one Bohr magneton squared per
-/// unit of statistical weight: 64π⁴ μ_B²/3h, s⁻¹ cm³.
-const M1_PER_S_CM3: f64 = 2.697e-11;
-/// Share of the rate out of a level from which an untabulated decay would matter.
-const MATTERS: f64 = 0.1;
 
 /// Steady state of a species in sunlight: Σ rates = 0 for every level, Σ x = 1, with upward rate
 /// (g_u/g_l) A n̄ and downward rate A (1 + n̄); g of a line is x_u A.
@@ -24,6 +17,7 @@ const MATTERS: f64 = 0.1;
 /// population. Only spontaneous emission counts in g: stimulated photons leave with the sunlight.
 #[derive(Clone, Debug)]
 pub struct Equilibrium {
+    species: Species,
     populations: Vec<f64>,
     lines: Vec<LineG>,
     dropped: Vec<Dropped>,
@@ -50,8 +44,9 @@ impl Equilibrium {
         let (absorbed_erg_s, emitted_erg_s) = energy(system, &rates, &solved.populations);
         let (stranded, contested) = stranded(system, &rates, &solved.populations);
         let mut caveats = system.caveats().to_vec();
-        caveats.extend(doubts(system, &solved, contested));
+        caveats.extend(doubts(system, &solved.dropped, contested));
         Ok(Self {
+            species: system.species().clone(),
             populations: solved.populations,
             lines,
             dropped: solved.dropped,
@@ -115,6 +110,12 @@ impl Equilibrium {
     /// equilibrium.
     pub fn relaxation_s(&self) -> f64 {
         self.relaxation_s
+    }
+
+    /// A caveat when atoms cross the field of view, in `transit_s` seconds, before they are in
+    /// equilibrium.
+    pub fn slow_for(&self, transit_s: f64) -> Option<Caveat> {
+        slow(&self.species, self.relaxation_s, transit_s)
     }
 
     /// Share of the population in excited levels from which no transition downwards is tabulated.
@@ -220,62 +221,10 @@ fn energy(system: &LevelSystem, rates: &[Rates], populations: &[f64]) -> (f64, f
     (absorbed, emitted)
 }
 
-fn stranded(system: &LevelSystem, rates: &[Rates], populations: &[f64]) -> (f64, f64) {
-    let mut decays = vec![false; populations.len()];
-    let mut pumped_per_s = vec![0.0; populations.len()];
-    for (line, rate) in system.lines().iter().zip(rates) {
-        decays[line.upper] = true;
-        pumped_per_s[line.lower] += rate.up_per_s;
-    }
-    let (mut stranded, mut contested) = (0.0, 0.0);
-    for (i, x) in populations.iter().enumerate().skip(1) {
-        if decays[i] {
-            continue;
-        }
-        stranded += x;
-        let decay_per_s = M1_PER_S_CM3 * system.levels()[i].energy_cm1.powi(3);
-        if decay_per_s > MATTERS * pumped_per_s[i] {
-            contested += x;
-        }
-    }
-    (stranded, contested)
-}
-
-fn doubts(system: &LevelSystem, solved: &Solved, contested: f64) -> Vec<Caveat> {
-    let species = system.species();
-    let mut caveats = Vec::new();
-    if contested > CONTESTED_SHARE {
-        caveats.push(Caveat::Other {
-            code: "levels-without-decay",
-            text: format!(
-                "{species}: {:.0} % of the atoms sit in excited levels without a tabulated way down, where an untabulated decay could compete with sunlight; lines from those levels may be too bright and the others too faint by that share",
-                100.0 * contested
-            ),
-        });
-    }
-    let traps: Vec<&str> = solved
-        .dropped
-        .iter()
-        .filter(|d| d.trap)
-        .map(|d| system.levels()[d.level].label.as_str())
-        .collect();
-    if !traps.is_empty() {
-        caveats.push(Caveat::Other {
-            code: "levels-without-return",
-            text: format!(
-                "{species}: levels that atoms fall into and cannot leave were left out: {}",
-                traps.join(", ")
-            ),
-        });
-    }
-    caveats
-}
-
 #[cfg(test)]
 mod tests {
     use super::*;
     use crate::atomic::{Level, Line};
-    use crate::ground::Species;
 
     fn system(energies_cm1: &[f64], lines: &[(usize, usize, f64)]) -> LevelSystem {
         let levels = energies_cm1.iter().map(|&energy_cm1| Level {
@@ -336,7 +285,9 @@ mod tests {
         let found = Equilibrium::solve(&metastable, &sun(), &Conditions::UNIT).unwrap();
         assert!(found.stranded() > 0.03 && found.stranded() < 1.0);
         assert_eq!(found.caveats()[0].code(), "levels-without-decay");
-        assert!(found.relaxation_s() > 0.0);
+        assert!(found.slow_for(1e9).is_none());
+        let slow = found.slow_for(0.1 * found.relaxation_s()).unwrap();
+        assert_eq!(slow.code(), "not-in-equilibrium");
     }
 
     #[test]
