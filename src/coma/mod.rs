@@ -1,1 +1,3 @@
 //! Floor 5: from band flux to production rate.
+
+pub mod equilibrium;
