@@ -126,9 +126,9 @@ pub(super) fn check_units(
     let density = cells
         .get(flux)
         .and_then(|t| crate::ground::FluxUnit::parse(t).ok());
-    let clash = if wave.is_some_and(|u| u != layout.wavelength_unit) {
+    let clash = if wave.is_some_and(|u| !u.agrees_with(&layout.wavelength_unit)) {
         Some(wavelength)
-    } else if density.is_some_and(|u| u != layout.flux_unit) {
+    } else if density.is_some_and(|u| !u.agrees_with(&layout.flux_unit)) {
         Some(flux)
     } else {
         None
