@@ -2,8 +2,8 @@
 //!
 //! With values and upper limits only this is the Kaplan & Meier (1958) product-limit estimator on
 //! the reversed axis, P(X ≤ v) = Π_{v_j > v} (1 − d_j/n_j), d_j values at v_j and n_j values and
-//! limits at or below v_j; a limit at the same place as a value counts as below it. With lower
-//! limits too it is the self-consistent estimator of Turnbull 1974 (J. Am. Stat. Assoc. 69, 169),
+//! limits at or below v_j; an upper limit at the same place as a value counts as below it, a lower
+//! limit as above it. With lower limits too it is the self-consistent estimator of Turnbull 1974 (J. Am. Stat. Assoc. 69, 169),
 //! found by iteration and equal to the product limit when there are no lower limits.
 
 /// How an entry is known.
@@ -43,8 +43,11 @@ const MOST_ROUNDS: usize = 20_000;
 impl Distribution {
     /// Estimates the distribution; `None` when no entry is a value.
     pub fn estimate(sample: &[Censored]) -> Option<Self> {
-        let mut points: Vec<f64> =
-            sample.iter().filter(|e| e.known == Known::Value).map(|e| e.value).collect();
+        let mut points: Vec<f64> = sample
+            .iter()
+            .filter(|e| e.known == Known::Value)
+            .map(|e| e.value)
+            .collect();
         points.sort_by(f64::total_cmp);
         points.dedup();
         if points.is_empty() {
@@ -60,18 +63,29 @@ impl Distribution {
     /// P(X ≤ v).
     pub fn at_or_below(&self, v: f64) -> f64 {
         let i = self.points.partition_point(|p| *p <= v);
-        if i == 0 { self.below_all } else { self.at_or_below[i - 1] }
+        if i == 0 {
+            self.below_all
+        } else {
+            self.at_or_below[i - 1]
+        }
     }
 
     /// P(X < v).
     pub fn below(&self, v: f64) -> f64 {
         let i = self.points.partition_point(|p| *p < v);
-        if i == 0 { self.below_all } else { self.at_or_below[i - 1] }
+        if i == 0 {
+            self.below_all
+        } else {
+            self.at_or_below[i - 1]
+        }
     }
 
     /// Smallest value v with P(X ≤ v) ≥ p; `None` when p is not reached.
     pub fn quantile(&self, p: f64) -> Option<f64> {
-        self.at_or_below.iter().position(|q| *q >= p - 1e-12).map(|i| self.points[i])
+        self.at_or_below
+            .iter()
+            .position(|q| *q >= p - 1e-12)
+            .map(|i| self.points[i])
     }
 
     /// Number of entries, values and limits.
@@ -81,7 +95,10 @@ impl Distribution {
 
     /// The steps: (value, P(X ≤ value)).
     pub fn steps(&self) -> impl Iterator<Item = (f64, f64)> + '_ {
-        self.points.iter().copied().zip(self.at_or_below.iter().copied())
+        self.points
+            .iter()
+            .copied()
+            .zip(self.at_or_below.iter().copied())
     }
 }
 
@@ -95,7 +112,12 @@ fn product_limit(sample: &[Censored], points: Vec<f64>) -> Distribution {
         let at_risk = sample.iter().filter(|e| e.value <= points[i]).count() as f64;
         running *= 1.0 - values / at_risk;
     }
-    Distribution { points, at_or_below, below_all: running, entries: sample.len() }
+    Distribution {
+        points,
+        at_or_below,
+        below_all: running,
+        entries: sample.len(),
+    }
 }
 
 fn self_consistent(sample: &[Censored], points: Vec<f64>) -> Distribution {
@@ -108,8 +130,8 @@ fn self_consistent(sample: &[Censored], points: Vec<f64>) -> Distribution {
                 let i = 1 + points.partition_point(|p| *p < e.value);
                 (i, i + 1)
             }
-            Known::Upper => (0, 1 + points.partition_point(|p| *p <= e.value)),
-            Known::Lower => (1 + points.partition_point(|p| *p < e.value), cells),
+            Known::Upper => (0, 1 + points.partition_point(|p| *p < e.value)),
+            Known::Lower => (1 + points.partition_point(|p| *p <= e.value), cells),
         })
         .collect();
     let mut mass = vec![1.0 / cells as f64; cells];
@@ -135,7 +157,12 @@ fn self_consistent(sample: &[Censored], points: Vec<f64>) -> Distribution {
             sum
         })
         .collect();
-    Distribution { points, at_or_below, below_all: mass[0], entries: sample.len() }
+    Distribution {
+        points,
+        at_or_below,
+        below_all: mass[0],
+        entries: sample.len(),
+    }
 }
 
 #[cfg(test)]
@@ -143,7 +170,12 @@ mod tests {
     use super::*;
 
     fn values(v: &[f64]) -> Vec<Censored> {
-        v.iter().map(|v| Censored { value: *v, known: Known::Value }).collect()
+        v.iter()
+            .map(|v| Censored {
+                value: *v,
+                known: Known::Value,
+            })
+            .collect()
     }
 
     #[test]
@@ -158,8 +190,14 @@ mod tests {
     #[test]
     fn iteration_and_product_limit_agree() {
         let mut sample = values(&[1.0, 2.0, 3.0, 4.0]);
-        sample.push(Censored { value: 2.5, known: Known::Upper });
-        sample.push(Censored { value: 3.0, known: Known::Upper });
+        sample.push(Censored {
+            value: 2.5,
+            known: Known::Upper,
+        });
+        sample.push(Censored {
+            value: 3.0,
+            known: Known::Upper,
+        });
         let product = Distribution::estimate(&sample).expect("values");
         let points = product.points.clone();
         let iterated = self_consistent(&sample, points);
@@ -171,6 +209,12 @@ mod tests {
 
     #[test]
     fn only_limits_give_no_distribution() {
-        assert!(Distribution::estimate(&[Censored { value: 1.0, known: Known::Upper }]).is_none());
+        assert!(
+            Distribution::estimate(&[Censored {
+                value: 1.0,
+                known: Known::Upper
+            }])
+            .is_none()
+        );
     }
 }

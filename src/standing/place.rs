@@ -33,7 +33,9 @@ pub fn place(distribution: &Distribution, median: f64, draws: &[f64], seed: u64)
             .sample(&mut rng)
     }));
     let percentile = 100.0 * fraction(median);
-    let (low, high) = spread.map_or((percentile, percentile), |i| (100.0 * i.low68, 100.0 * i.high68));
+    let (low, high) = spread.map_or((percentile, percentile), |i| {
+        (100.0 * i.low68, 100.0 * i.high68)
+    });
     Standing {
         comets: distribution.entries(),
         percentile,
@@ -49,8 +51,12 @@ mod tests {
 
     #[test]
     fn a_value_in_the_middle_is_in_the_middle() {
-        let sample: Vec<Censored> =
-            (1..=9).map(|v| Censored { value: f64::from(v), known: Known::Value }).collect();
+        let sample: Vec<Censored> = (1..=9)
+            .map(|v| Censored {
+                value: f64::from(v),
+                known: Known::Value,
+            })
+            .collect();
         let d = Distribution::estimate(&sample).expect("values");
         let s = place(&d, 5.0, &vec![5.0; 2000], 1);
         assert!((s.percentile - 50.0).abs() < 1e-9);

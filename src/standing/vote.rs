@@ -22,7 +22,10 @@ pub struct Entry {
 impl Entry {
     /// The entry without its errors.
     pub fn censored(&self) -> Censored {
-        Censored { value: self.value, known: self.known }
+        Censored {
+            value: self.value,
+            known: self.known,
+        }
     }
 }
 
@@ -36,14 +39,17 @@ pub enum VoteRule {
 /// Keeps one entry per comet by the rule, in the order of the comets' first appearance.
 pub fn one_vote_each(entries: &[Entry], rule: VoteRule) -> Vec<Entry> {
     let VoteRule::NearestDistance(here_au) = rule;
-    let far = |e: &Entry| e.heliocentric_au.map_or(f64::INFINITY, |r| (r / here_au).ln().abs());
+    let far = |e: &Entry| {
+        e.heliocentric_au
+            .map_or(f64::INFINITY, |r| (r / here_au).ln().abs())
+    };
     let rank = |e: &Entry| (e.known != Known::Value, far(e));
     let mut chosen: Vec<Entry> = Vec::new();
     for entry in entries {
         match chosen.iter_mut().find(|c| c.comet == entry.comet) {
             Some(present) => {
                 let (new, old) = (rank(entry), rank(present));
-                if new.0 < old.0 || (new.0 == old.0 && new.1 < old.1) {
+                if !new.0 & old.0 || (new.0 == old.0 && new.1 < old.1) {
                     *present = entry.clone();
                 }
             }
@@ -79,6 +85,9 @@ mod tests {
             ],
             VoteRule::NearestDistance(1.0),
         );
-        assert_eq!(chosen.iter().map(|e| e.value).collect::<Vec<_>>(), [0.3, 0.4]);
+        assert_eq!(
+            chosen.iter().map(|e| e.value).collect::<Vec<_>>(),
+            [0.3, 0.4]
+        );
     }
 }
