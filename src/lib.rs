@@ -11,11 +11,17 @@
 //! Inside, wavelengths are vacuum Å and fluxes are cgs (erg s⁻¹ cm⁻²); units are converted once, in
 //! the readers. Every dimensional field carries its unit as a suffix.
 
+pub mod analysis;
 pub mod atomic;
+pub mod cli;
 pub mod coma;
 pub mod figures;
 pub mod fit;
 pub mod frame;
 pub mod ground;
+pub mod plan;
+pub mod ratio;
+pub mod report;
 pub mod spectrum;
+pub mod standing;
 pub mod tables;

@@ -7,6 +7,7 @@
 use super::basis::{chebyshev, to_unit_interval};
 use super::profile::{ProfileValue, REACH_SIGMA, Sampling, gaussian, gaussian_over_pixel};
 use super::solver::Residuals;
+use crate::ground::Result;
 use std::ops::Range;
 
 /// One band inside a window.
@@ -86,6 +87,48 @@ impl WindowModel {
             shapes: 0,
             sampling,
         }
+    }
+
+    /// A continuum of the given order and Gaussians whose centre and width are all fitted, from
+    /// rough `(centre, standard deviation)` pairs in Å; `tied` gives them one velocity and one width
+    /// factor. For fits that start near, without a search.
+    pub fn gaussians(
+        x_aa: &[f64],
+        data: &[f64],
+        sigma: &[f64],
+        order: usize,
+        lines_aa: &[(f64, f64)],
+        tied: bool,
+    ) -> Self {
+        let n = x_aa.len();
+        let half = 0.5 * (x_aa[n - 1] - x_aa[0]) / (n - 1) as f64;
+        let edges: Vec<(f64, f64)> = x_aa.iter().map(|x| (x - half, x + half)).collect();
+        let window = (x_aa[0], x_aa[n - 1]);
+        let mut model = Self::new(x_aa, &edges, data, sigma, window, order, Sampling::Centre);
+        let slot = |b: usize| if tied { 0 } else { 2 * b };
+        let components = lines_aa
+            .iter()
+            .enumerate()
+            .map(|(b, (centre_aa, sigma_aa))| Component {
+                centre_aa: *centre_aa,
+                sigma_aa: *sigma_aa,
+                shift: Slot::Fitted(slot(b)),
+                stretch: Slot::Fitted(slot(b) + 1),
+            })
+            .collect();
+        let shapes = if tied { 2 } else { 2 * lines_aa.len() };
+        model.set_components(components, shapes);
+        model
+    }
+
+    /// Starting parameters: the linear ones solved at the expected shapes.
+    ///
+    /// # Errors
+    /// Bands that cannot be told apart.
+    pub fn start(&self) -> Result<Vec<f64>> {
+        let shapes: Vec<f64> = (0..self.shapes).map(|s| (s % 2) as f64).collect();
+        let linear = super::start::solve_linear(self, &shapes)?;
+        Ok(linear.parameters.into_iter().chain(shapes).collect())
     }
 
     /// Sets the bands; `shapes` is the number of shape slots they use.

@@ -2,9 +2,12 @@
 
 use super::Sampling;
 use crate::ground::{Error, Result};
+use schemars::JsonSchema;
+use serde::{Deserialize, Serialize};
 
 /// Whether a shape parameter (centre or width) is fitted.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize, JsonSchema)]
+#[serde(rename_all = "lowercase")]
 pub enum Freedom {
     /// Fitted if the band is strong enough to carry it, held at the expected value otherwise.
     Auto,

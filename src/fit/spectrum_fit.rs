@@ -4,6 +4,7 @@ use super::basis::{chebyshev, to_unit_interval};
 use super::detect::upper_limit;
 use super::model::profile_at;
 use super::noise::scatter;
+use super::profile::{gaussian, sigma_from_fwhm};
 use super::settings::{BandModel, FitSettings};
 use super::solver::Solver;
 use super::window::{WindowInput, WindowOutcome, fit_window};
@@ -78,6 +79,22 @@ pub struct WindowFit {
     pub bands: Vec<String>,
     /// Every sample inside the window, used or not.
     pub samples: Vec<SampleFit>,
+}
+
+impl WindowFit {
+    /// The continuum at a rest vacuum wavelength in Å, erg s⁻¹ cm⁻² Å⁻¹.
+    pub fn continuum_at(&self, x_aa: f64) -> f64 {
+        continuum_at(x_aa, self.window_aa, &self.continuum_erg_s_cm2_aa)
+    }
+}
+
+impl BandFit {
+    /// The band's flux density at a rest vacuum wavelength in Å, erg s⁻¹ cm⁻² Å⁻¹, not averaged
+    /// over a pixel.
+    pub fn at(&self, x_aa: f64) -> f64 {
+        let sigma = sigma_from_fwhm(self.fwhm_aa);
+        self.flux_erg_s_cm2.value * gaussian(x_aa, self.centre_aa, sigma).value
+    }
 }
 
 /// Everything the fit of one spectrum yields.

@@ -30,11 +30,10 @@ impl DrawSettings {
     /// A count outside 100 to 10 million.
     pub fn checked(self) -> Result<Self> {
         if !(100..=10_000_000).contains(&self.count) {
-            return Err(Error::plan(format!(
-                "draws = {} is outside 100 to 10000000",
-                self.count
-            ))
-            .remedy("10000 draws give a 68 % interval to about 2 % of its width"));
+            return Err(
+                Error::plan(format!("draws = {} is outside 100 to 10000000", self.count))
+                    .remedy("10000 draws give a 68 % interval to about 2 % of its width"),
+            );
         }
         Ok(self)
     }
@@ -143,7 +142,11 @@ pub fn draw(
     let shape = (settings.count, plans.len());
     let mut out = Draws {
         species: plans.iter().map(|p| p.species.clone()).collect(),
-        molecules: plans.iter().zip(&weights).map(|(p, w)| combine(blocks, p, w)).collect(),
+        molecules: plans
+            .iter()
+            .zip(&weights)
+            .map(|(p, w)| combine(blocks, p, w))
+            .collect(),
         production_per_s: Vec::new(),
         molecule_draws: Array2::zeros(shape),
         factor_draws: Array2::zeros(shape),
@@ -154,9 +157,9 @@ pub fn draw(
         .iter()
         .zip(&out.molecules)
         .map(|(p, m)| {
-            p.lifetimes
-                .as_ref()
-                .map_or(f64::NAN, |l| m.value / l.grid.residence_s(&l.lengths, l.speed_km_s))
+            p.lifetimes.as_ref().map_or(f64::NAN, |l| {
+                m.value / l.grid.residence_s(&l.lengths, l.speed_km_s)
+            })
         })
         .collect();
     let mut rng = Xoshiro256PlusPlus::seed_from_u64(settings.seed);
@@ -180,13 +183,18 @@ fn root(block: &FluxBlock) -> Result<DMatrix<f64>> {
     let n = block.flux_erg_s_cm2.len();
     let sigma: Vec<f64> = (0..n).map(|i| block.covariance[(i, i)].sqrt()).collect();
     if sigma.iter().any(|s| !(s.is_finite() && *s > 0.0)) {
-        return Err(Error::compute("a band flux has no finite error; its ratio cannot be drawn"));
+        return Err(Error::compute(
+            "a band flux has no finite error; its ratio cannot be drawn",
+        ));
     }
-    let correlation =
-        DMatrix::from_fn(n, n, |a, b| block.covariance[(a, b)] / (sigma[a] * sigma[b]));
+    let correlation = DMatrix::from_fn(n, n, |a, b| {
+        block.covariance[(a, b)] / (sigma[a] * sigma[b])
+    });
     let eigen = correlation.symmetric_eigen();
     if eigen.eigenvalues.iter().any(|v| *v < -1e-8) {
-        return Err(Error::compute("the covariance of the band fluxes is not positive"));
+        return Err(Error::compute(
+            "the covariance of the band fluxes is not positive",
+        ));
     }
     let mut out = eigen.eigenvectors;
     for (c, value) in eigen.eigenvalues.iter().enumerate() {
@@ -252,8 +260,15 @@ impl Universe {
                 DVector::from_column_slice(&block.flux_erg_s_cm2) + root * z
             })
             .collect();
-        let calibration = blocks.iter().map(|b| factor(b.calibration_sigma, rng)).collect();
-        Self { fluxes, calibration, speed: factor(speed_sigma, rng) }
+        let calibration = blocks
+            .iter()
+            .map(|b| factor(b.calibration_sigma, rng))
+            .collect();
+        Self {
+            fluxes,
+            calibration,
+            speed: factor(speed_sigma, rng),
+        }
     }
 
     /// Molecules of a species and the factor that multiplied its flux.
@@ -274,14 +289,20 @@ impl Universe {
     }
 
     fn residence_s(&self, lifetimes: &Lifetimes, rng: &mut Xoshiro256PlusPlus) -> f64 {
-        let follow = if lifetimes.lengths_follow_speed { self.speed } else { 1.0 };
+        let follow = if lifetimes.lengths_follow_speed {
+            self.speed
+        } else {
+            1.0
+        };
         let parent = factor(lifetimes.parent_sigma, rng) * follow;
         let daughter = factor(lifetimes.daughter_sigma, rng) * follow;
         let lengths = Lengths {
             parent_km: lifetimes.lengths.parent_km * parent,
             daughter_km: lifetimes.lengths.daughter_km.map(|d| d * daughter),
         };
-        lifetimes.grid.residence_s(&lengths, lifetimes.speed_km_s * self.speed)
+        lifetimes
+            .grid
+            .residence_s(&lengths, lifetimes.speed_km_s * self.speed)
     }
 }
 

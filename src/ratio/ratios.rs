@@ -101,13 +101,18 @@ pub fn ratio(draws: &Draws, of: usize, to: usize, basis: Basis, detection_sigma:
         RatioKind::Upper => {
             let top = positive_draws(draws, of);
             let bottom: Vec<f64> = draws.molecule_draws.column(to).to_vec();
-            out.limit = limit(quotient(draws, of, to, basis, &top, &bottom), LIMIT_CONFIDENCE);
+            out.limit = limit(
+                quotient(draws, of, to, basis, &top, &bottom),
+                LIMIT_CONFIDENCE,
+            );
         }
         RatioKind::Lower => {
             let top: Vec<f64> = draws.molecule_draws.column(of).to_vec();
             let bottom = positive_draws(draws, to);
-            out.limit =
-                limit(quotient(draws, of, to, basis, &top, &bottom), 1.0 - LIMIT_CONFIDENCE);
+            out.limit = limit(
+                quotient(draws, of, to, basis, &top, &bottom),
+                1.0 - LIMIT_CONFIDENCE,
+            );
         }
         RatioKind::Unconstrained => {}
     }
@@ -122,7 +127,10 @@ fn quotient(
     top: &[f64],
     bottom: &[f64],
 ) -> Vec<f64> {
-    let (t_of, t_to) = (draws.residence_draws_s.column(of), draws.residence_draws_s.column(to));
+    let (t_of, t_to) = (
+        draws.residence_draws_s.column(of),
+        draws.residence_draws_s.column(to),
+    );
     (0..top.len())
         .map(|i| {
             let residence = match basis {

@@ -1,0 +1,525 @@
+//! Floor 7: the whole way from spectra to standings, on checked settings.
+//!
+//! Imports floors 0–6. Reads no file and prints nothing; what it returns is all that the edges see.
+
+use crate::coma::{ApertureKm, Lengths, ResidenceGrid, molecules_per_flux};
+use crate::fit::{BandFit, BandModel, FitSettings, SpectrumFit, fit_spectrum};
+use crate::frame::{Aperture, Frame, Geometry, to_rest};
+use crate::ground::{Caveat, Error, Measured, Result, Species};
+use crate::ratio::{
+    BandShare, Basis, DrawSettings, Draws, FluxBlock, Lifetimes, Ratio, SpeciesPlan, draw, ratio,
+};
+use crate::spectrum::Spectrum;
+use crate::standing::{Distribution, Entry, Standing, VoteRule, one_vote_each, place};
+
+/// Everything the analysis needs besides the spectra, already checked.
+#[derive(Clone, Debug)]
+pub struct Settings {
+    /// The comet's name for tables and figures.
+    pub label: String,
+    /// Date of observation, free text.
+    pub date: Option<String>,
+    /// Distances and velocities.
+    pub geometry: Geometry,
+    /// Extraction aperture.
+    pub aperture: Aperture,
+    /// One per spectrum, in the order of the spectra.
+    pub spectra: Vec<SpectrumSettings>,
+    /// The bands in the order asked for.
+    pub bands: Vec<BandSettings>,
+    /// The species of those bands, in order of first appearance.
+    pub species: Vec<SpeciesSettings>,
+    /// The ratios asked for.
+    pub ratios: Vec<RatioSettings>,
+    /// Relative error of the expansion speed, common to all species.
+    pub speed_sigma: f64,
+    /// Number and seed of the draws.
+    pub draws: DrawSettings,
+    /// Signal-to-noise of a detection.
+    pub detection_sigma: f64,
+    /// Doubts found while checking.
+    pub caveats: Vec<Caveat>,
+    /// References of the numbers in use: (key, text).
+    pub sources: Vec<(String, String)>,
+}
+
+/// How to treat one spectrum.
+#[derive(Clone, Debug)]
+pub struct SpectrumSettings {
+    /// Frame of its wavelengths.
+    pub frame: Frame,
+    /// Fit settings without bands.
+    pub fit: FitSettings,
+    /// Relative error of its flux calibration.
+    pub calibration_sigma: f64,
+}
+
+/// One band: what the fit needs and what its flux means.
+#[derive(Clone, Debug)]
+pub struct BandSettings {
+    /// For the fit.
+    pub model: BandModel,
+    /// Its species, if it has one.
+    pub species: Option<Species>,
+    /// Fluorescence efficiency at the comet.
+    pub efficiency: Option<EfficiencyAtComet>,
+    /// The spectrum to use, when the user says so.
+    pub spectrum: Option<usize>,
+    /// Line-centre opacity per column density of the strongest line, cm², where known.
+    pub opacity_cm2: Option<f64>,
+    /// A structured band that one Gaussian follows only at low resolution: its intrinsic width, Å.
+    pub structured_fwhm_aa: Option<f64>,
+}
+
+/// A g-factor scaled to the comet's heliocentric distance.
+#[derive(Clone, Debug, PartialEq)]
+pub struct EfficiencyAtComet {
+    /// Photons s⁻¹ molecule⁻¹.
+    pub g_photons_s: f64,
+    /// Relative error.
+    pub relative_sigma: f64,
+    /// Where it comes from.
+    pub source: String,
+}
+
+/// Coma model of one species.
+#[derive(Clone, Debug)]
+pub struct SpeciesSettings {
+    /// The species.
+    pub species: Species,
+    /// Scale lengths and speed, where known.
+    pub coma: Option<ComaSettings>,
+}
+
+/// Scale lengths at the comet and the speed that goes with them.
+#[derive(Clone, Debug)]
+pub struct ComaSettings {
+    /// Scale lengths at the comet.
+    pub lengths: Lengths,
+    /// Relative error of each length.
+    pub length_sigma: f64,
+    /// Speed, km s⁻¹.
+    pub speed_km_s: f64,
+    /// True when the parent length is speed × lifetime.
+    pub lengths_follow_speed: bool,
+    /// Where they come from.
+    pub source: String,
+}
+
+/// One ratio asked for, with its comparison comets.
+#[derive(Clone, Debug)]
+pub struct RatioSettings {
+    /// Numerator.
+    pub of: Species,
+    /// Denominator.
+    pub to: Species,
+    /// Production rates or columns.
+    pub basis: Basis,
+    /// Published measurements of the same ratio.
+    pub known: Vec<Entry>,
+}
+
+/// One band of the result.
+#[derive(Clone, Debug)]
+pub struct BandResult {
+    /// The fit.
+    pub fit: BandFit,
+    /// Its species.
+    pub species: Option<Species>,
+    /// Index of the spectrum.
+    pub spectrum: usize,
+    /// g at the comet.
+    pub efficiency: Option<EfficiencyAtComet>,
+    /// Mean column density in the aperture; the error is the fit's alone.
+    pub column_cm2: Option<Measured>,
+}
+
+/// One species of the result.
+#[derive(Clone, Debug)]
+pub struct SpeciesResult {
+    /// The species.
+    pub species: Species,
+    /// Molecules in the aperture with the full error.
+    pub molecules: Measured,
+    /// Mean column density, cm⁻², with the full error.
+    pub column_cm2: Measured,
+    /// Production rate with the full error, where the coma model is known.
+    pub production_per_s: Option<Measured>,
+    /// Whether the fluxes detect it.
+    pub detected: bool,
+}
+
+/// A ratio and its standing.
+#[derive(Clone, Debug)]
+pub struct RatioResult {
+    /// The ratio.
+    pub ratio: Ratio,
+    /// The comets it was compared with, one entry each.
+    pub known: Vec<Entry>,
+    /// Its place among them.
+    pub standing: Option<Standing>,
+}
+
+/// Everything that the analysis yields.
+#[derive(Clone, Debug)]
+pub struct Analysis {
+    /// Projected area of the aperture, cm².
+    pub aperture_cm2: f64,
+    /// One fit per spectrum that has bands, with the index of the spectrum.
+    pub fits: Vec<(usize, SpectrumFit)>,
+    /// Bands in the order asked for.
+    pub bands: Vec<BandResult>,
+    /// Species in the order of their first band.
+    pub species: Vec<SpeciesResult>,
+    /// Ratios in the order asked for.
+    pub ratios: Vec<RatioResult>,
+    /// All doubts.
+    pub caveats: Vec<Caveat>,
+}
+
+/// Fewer comets than this draw a caveat.
+const THIN_COMPARISON: usize = 10;
+/// Optical depth from which the linear conversion is doubted.
+const DOUBTFUL_TAU: f64 = 0.3;
+
+/// Runs the analysis.
+///
+/// # Errors
+/// A band that no spectrum covers, a fit without an answer, a ratio without a coma model.
+pub fn analyse(spectra: &[Spectrum], settings: &Settings) -> Result<Analysis> {
+    let mut caveats = settings.caveats.clone();
+    let home = assign_bands(spectra, settings)?;
+    let fits = fit_all(spectra, settings, &home, &mut caveats)?;
+    let aperture_cm2 = settings.aperture.area_cm2(settings.geometry.observer_au);
+    let bands = band_results(settings, &fits, &home, aperture_cm2, &mut caveats);
+    let plans = species_plans(settings, &fits, &home);
+    let blocks = flux_blocks(settings, &fits);
+    if plans.is_empty() {
+        return Ok(Analysis {
+            aperture_cm2,
+            fits,
+            bands,
+            species: vec![],
+            ratios: vec![],
+            caveats,
+        });
+    }
+    let draws = draw(&blocks, &plans, settings.speed_sigma, settings.draws)?;
+    let species = species_results(settings, &draws, aperture_cm2);
+    let ratios = settings
+        .ratios
+        .iter()
+        .map(|r| ratio_result(r, settings, &draws, &mut caveats))
+        .collect::<Result<Vec<_>>>()?;
+    Ok(Analysis {
+        aperture_cm2,
+        fits,
+        bands,
+        species,
+        ratios,
+        caveats,
+    })
+}
+
+/// The spectrum each band is measured in.
+fn assign_bands(spectra: &[Spectrum], settings: &Settings) -> Result<Vec<usize>> {
+    let covers = |s: &Spectrum, centre: f64| {
+        let x = s.wavelength_aa();
+        x[0] < centre && centre < x[x.len() - 1]
+    };
+    settings
+        .bands
+        .iter()
+        .map(|band| {
+            if let Some(i) = band.spectrum {
+                return Ok(i);
+            }
+            let centre = band.model.centre_aa;
+            spectra
+                .iter()
+                .position(|s| covers(s, centre))
+                .ok_or_else(|| {
+                    let ranges: Vec<String> = spectra
+                        .iter()
+                        .map(|s| {
+                            let x = s.wavelength_aa();
+                            format!(
+                                "{} covers {:.1} to {:.1} Å",
+                                s.label(),
+                                x[0],
+                                x[x.len() - 1]
+                            )
+                        })
+                        .collect();
+                    Error::input(format!(
+                        "band {} at {centre:.1} Å (vacuum) lies in none of the spectra: {}",
+                        band.model.id,
+                        ranges.join("; ")
+                    ))
+                    .remedy("leave the band out, or check wavelength_unit and medium")
+                })
+        })
+        .collect()
+}
+
+fn fit_all(
+    spectra: &[Spectrum],
+    settings: &Settings,
+    home: &[usize],
+    caveats: &mut Vec<Caveat>,
+) -> Result<Vec<(usize, SpectrumFit)>> {
+    let mut fits = Vec::new();
+    for (i, (spectrum, how)) in spectra.iter().zip(&settings.spectra).enumerate() {
+        let (nan, flagged) = spectrum.left_out();
+        if nan + flagged > 0 {
+            caveats.push(Caveat::SamplesLeftOut {
+                spectrum: spectrum.label().to_owned(),
+                not_a_number: nan,
+                flagged,
+            });
+        }
+        let mut fit_settings = how.fit.clone();
+        fit_settings.bands = bands_of(settings, home, i)
+            .map(|b| b.model.clone())
+            .collect();
+        if fit_settings.bands.is_empty() {
+            caveats.push(Caveat::Other {
+                code: "spectrum-unused",
+                text: format!("{}: none of the bands lies in it", spectrum.label()),
+            });
+            continue;
+        }
+        let rest = to_rest(spectrum, how.frame, &settings.geometry, &settings.aperture);
+        let fit = fit_spectrum(&rest, &fit_settings)?;
+        caveats.extend(fit.caveats.iter().cloned());
+        fits.push((i, fit));
+    }
+    Ok(fits)
+}
+
+fn bands_of<'a>(
+    settings: &'a Settings,
+    home: &'a [usize],
+    spectrum: usize,
+) -> impl Iterator<Item = &'a BandSettings> {
+    settings
+        .bands
+        .iter()
+        .zip(home)
+        .filter(move |(_, h)| **h == spectrum)
+        .map(|(b, _)| b)
+}
+
+/// Position of a band's fit: (index among the fits, index in that fit).
+fn find_fit(
+    settings: &Settings,
+    fits: &[(usize, SpectrumFit)],
+    home: &[usize],
+    band: usize,
+) -> (usize, usize) {
+    let at = fits
+        .iter()
+        .position(|(i, _)| *i == home[band])
+        .expect("invariant: a spectrum with bands was fitted");
+    let within = (0..band).filter(|b| home[*b] == home[band]).count();
+    debug_assert_eq!(fits[at].1.bands[within].id, settings.bands[band].model.id);
+    (at, within)
+}
+
+fn band_results(
+    settings: &Settings,
+    fits: &[(usize, SpectrumFit)],
+    home: &[usize],
+    aperture_cm2: f64,
+    caveats: &mut Vec<Caveat>,
+) -> Vec<BandResult> {
+    let mut out = Vec::new();
+    for (b, band) in settings.bands.iter().enumerate() {
+        let (at, within) = find_fit(settings, fits, home, b);
+        let fit = fits[at].1.bands[within].clone();
+        let column_cm2 = band.efficiency.as_ref().map(|g| {
+            let per_flux = molecules_per_flux(
+                g.g_photons_s,
+                band.model.centre_aa,
+                settings.geometry.observer_au,
+            ) / aperture_cm2;
+            let flux = fit.flux_erg_s_cm2;
+            Measured::new(flux.value * per_flux, flux.sigma * per_flux)
+        });
+        note_band(band, &fit, column_cm2, caveats);
+        out.push(BandResult {
+            species: band.species.clone(),
+            spectrum: home[b],
+            efficiency: band.efficiency.clone(),
+            column_cm2,
+            fit,
+        });
+    }
+    out
+}
+
+fn note_band(
+    band: &BandSettings,
+    fit: &BandFit,
+    column_cm2: Option<Measured>,
+    caveats: &mut Vec<Caveat>,
+) {
+    if let (Some(opacity), Some(column)) = (band.opacity_cm2, column_cm2) {
+        let tau = opacity * column.value;
+        if fit.detected && tau > DOUBTFUL_TAU {
+            caveats.push(Caveat::OpticalDepth {
+                band: fit.id.clone(),
+                tau,
+            });
+        }
+    }
+    if let Some(intrinsic) = band.structured_fwhm_aa
+        && fit.detected
+        && fit.fwhm_aa < 1.5 * intrinsic
+        && fit.flux_erg_s_cm2.signal_to_noise() > 10.0
+    {
+        caveats.push(Caveat::GaussianForStructured {
+            band: fit.id.clone(),
+        });
+    }
+}
+
+fn species_plans(
+    settings: &Settings,
+    fits: &[(usize, SpectrumFit)],
+    home: &[usize],
+) -> Vec<SpeciesPlan> {
+    let km = ApertureKm::at(&settings.aperture, settings.geometry.observer_au);
+    settings
+        .species
+        .iter()
+        .map(|s| {
+            let bands = settings
+                .bands
+                .iter()
+                .enumerate()
+                .filter(|(_, b)| b.species.as_ref() == Some(&s.species))
+                .filter_map(|(b, band)| {
+                    let g = band.efficiency.as_ref()?;
+                    let (block, within) = find_fit(settings, fits, home, b);
+                    Some(BandShare {
+                        block,
+                        band: within,
+                        molecules_per_flux: molecules_per_flux(
+                            g.g_photons_s,
+                            band.model.centre_aa,
+                            settings.geometry.observer_au,
+                        ),
+                        g_sigma: g.relative_sigma,
+                    })
+                })
+                .collect();
+            let lifetimes = s
+                .coma
+                .as_ref()
+                .map(|c| lifetimes(c, &km, settings.speed_sigma));
+            SpeciesPlan {
+                species: s.species.clone(),
+                bands,
+                lifetimes,
+            }
+        })
+        .filter(|p: &SpeciesPlan| !p.bands.is_empty())
+        .collect()
+}
+
+/// Draws reach this many sigma from the centre; the grid spans them.
+const GRID_REACH_SIGMA: f64 = 4.5;
+
+fn lifetimes(coma: &ComaSettings, km: &ApertureKm, speed_sigma: f64) -> Lifetimes {
+    let follow = if coma.lengths_follow_speed {
+        speed_sigma
+    } else {
+        0.0
+    };
+    let span = GRID_REACH_SIGMA * coma.length_sigma.hypot(follow);
+    Lifetimes {
+        grid: ResidenceGrid::new(&coma.lengths, km, span),
+        lengths: coma.lengths,
+        parent_sigma: coma.length_sigma,
+        daughter_sigma: coma.length_sigma,
+        speed_km_s: coma.speed_km_s,
+        lengths_follow_speed: coma.lengths_follow_speed,
+    }
+}
+
+fn flux_blocks(settings: &Settings, fits: &[(usize, SpectrumFit)]) -> Vec<FluxBlock> {
+    fits.iter()
+        .map(|(i, fit)| FluxBlock {
+            flux_erg_s_cm2: fit.bands.iter().map(|b| b.flux_erg_s_cm2.value).collect(),
+            covariance: fit.flux_covariance.clone(),
+            calibration_sigma: settings.spectra[*i].calibration_sigma,
+        })
+        .collect()
+}
+
+fn species_results(settings: &Settings, draws: &Draws, aperture_cm2: f64) -> Vec<SpeciesResult> {
+    (0..draws.species.len())
+        .map(|c| {
+            let best = draws.molecules[c];
+            let sigma = spread(draws.molecule_draws.column(c).iter().copied());
+            let open = draws.production_per_s[c].is_nan();
+            SpeciesResult {
+                species: draws.species[c].clone(),
+                molecules: Measured::new(best.value, sigma),
+                column_cm2: Measured::new(best.value / aperture_cm2, sigma / aperture_cm2),
+                production_per_s: (!open).then(|| {
+                    Measured::new(draws.production_per_s[c], spread(draws.production_draws(c)))
+                }),
+                detected: best.signal_to_noise() >= settings.detection_sigma,
+            }
+        })
+        .collect()
+}
+
+/// Half the width of the 68.3 % interval of draws, which a rare wild draw does not move.
+fn spread(draws: impl Iterator<Item = f64>) -> f64 {
+    crate::ratio::Interval::of(draws).map_or(f64::NAN, |i| i.half_width68())
+}
+
+fn ratio_result(
+    wanted: &RatioSettings,
+    settings: &Settings,
+    draws: &Draws,
+    caveats: &mut Vec<Caveat>,
+) -> Result<RatioResult> {
+    let column = |s: &Species| {
+        draws.column(s).ok_or_else(|| {
+            Error::plan(format!(
+                "{s} has no band with a known g, so no ratio can be formed"
+            ))
+            .remedy("give g_photons_s in a [[band]] table")
+        })
+    };
+    let (of, to) = (column(&wanted.of)?, column(&wanted.to)?);
+    let found = ratio(draws, of, to, wanted.basis, settings.detection_sigma);
+    let rule = VoteRule::NearestDistance(settings.geometry.heliocentric_au);
+    let known = one_vote_each(&wanted.known, rule);
+    let sample: Vec<_> = known.iter().map(Entry::censored).collect();
+    let name = format!("{}/{}", wanted.of, wanted.to);
+    let standing = Distribution::estimate(&sample).and_then(|distribution| {
+        let median = found.interval?.median;
+        Some(place(
+            &distribution,
+            median,
+            &found.draws,
+            settings.draws.seed,
+        ))
+    });
+    if standing.is_some_and(|s| s.comets < THIN_COMPARISON) {
+        caveats.push(Caveat::ThinComparison {
+            ratio: name,
+            comets: known.len(),
+        });
+    }
+    Ok(RatioResult {
+        ratio: found,
+        known,
+        standing,
+    })
+}

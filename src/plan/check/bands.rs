@@ -1,0 +1,164 @@
+//! Bands of the plan: identifiers looked up, own bands judged.
+
+use super::Checker;
+use super::convert::{range_aa, width_aa};
+use crate::analysis::BandSettings;
+use crate::fit::{BandModel, Freedom};
+use crate::frame::Geometry;
+use crate::ground::{Error, Result, Species, did_you_mean};
+use crate::plan::schema::BandPlan;
+use crate::tables::Band;
+
+impl Checker<'_> {
+    pub(super) fn bands(&mut self, geometry: &Geometry) -> Result<Vec<BandSettings>> {
+        let wanted = &self.plan.measure.bands;
+        if wanted.is_empty() {
+            return Err(self.file.point(
+                Error::plan("bands is empty: nothing to measure").remedy(
+                    "name bands of the line lists (`comagauge bands`) or of [[band]] tables",
+                ),
+                &["measure", "bands"],
+            ));
+        }
+        for (i, id) in wanted.iter().enumerate() {
+            if wanted[..i].contains(id) {
+                return Err(self.file.point(
+                    Error::plan(format!("band {id} is named twice")),
+                    &["measure", "bands"],
+                ));
+            }
+        }
+        for (i, custom) in self.plan.band.iter().enumerate() {
+            let at = i.to_string();
+            if self.plan.band[..i].iter().any(|b| b.id == custom.id) {
+                return Err(self.file.point(
+                    Error::plan(format!("two [[band]] tables have the id {}", custom.id)),
+                    &["band", &at, "id"],
+                ));
+            }
+            if !wanted.contains(&custom.id) {
+                return Err(self.file.point(
+                    Error::plan(format!(
+                        "the [[band]] {} is not among the bands to measure",
+                        custom.id
+                    ))
+                    .remedy("add its id to bands in [measure], or remove the table"),
+                    &["band", &at, "id"],
+                ));
+            }
+        }
+        wanted.iter().map(|id| self.band(id, geometry)).collect()
+    }
+
+    fn band(&mut self, id: &str, geometry: &Geometry) -> Result<BandSettings> {
+        let custom = self.plan.band.iter().position(|b| b.id == id);
+        let listed = self.tables.bands().iter().find(|b| b.id == id);
+        let (index, empty) = (custom.unwrap_or_default().to_string(), BandPlan::default());
+        let keys = ["band", index.as_str()];
+        let own = custom.map_or(&empty, |i| &self.plan.band[i]);
+        if custom.is_none() && listed.is_none() {
+            return Err(self.unknown_band(id));
+        }
+        let model = self.band_model(id, own, listed, &keys)?;
+        let species = own
+            .species
+            .as_deref()
+            .map(Species::new)
+            .or_else(|| listed.map(|b| b.species.clone()));
+        let efficiency = self.efficiency(own, listed, geometry, &model, &keys)?;
+        if let Some(i) = own.spectrum
+            && !(1..=self.plan.spectrum.len()).contains(&i)
+        {
+            return Err(self.file.point(
+                Error::plan(format!(
+                    "spectrum = {i} is outside 1 to {}, the number of spectra",
+                    self.plan.spectrum.len()
+                )),
+                &["band", &index, "spectrum"],
+            ));
+        }
+        Ok(BandSettings {
+            opacity_cm2: None,
+            structured_fwhm_aa: listed.filter(|b| b.structured).map(|b| b.fwhm_aa),
+            spectrum: own.spectrum.map(|i| i - 1),
+            model,
+            species,
+            efficiency,
+        })
+    }
+
+    fn unknown_band(&self, id: &str) -> Error {
+        let known: Vec<&str> = self
+            .tables
+            .bands()
+            .iter()
+            .map(|b| b.id.as_str())
+            .chain(self.plan.band.iter().map(|b| b.id.as_str()))
+            .collect();
+        let mut remedy = format!(
+            "known bands: {}; or describe it in a [[band]] table",
+            known.join(", ")
+        );
+        if let Some(near) = did_you_mean(id, known.iter().copied()) {
+            remedy = format!("did you mean {near}? {remedy}");
+        }
+        self.file.point(
+            Error::plan(format!("the band {id} is not known")).remedy(remedy),
+            &["measure", "bands"],
+        )
+    }
+
+    fn band_model(
+        &self,
+        id: &str,
+        own: &BandPlan,
+        listed: Option<&Band>,
+        keys: &[&str],
+    ) -> Result<BandModel> {
+        let (unit, medium) = self.axis_or(own.unit.as_ref(), own.medium.as_ref(), keys)?;
+        let needed = |name: &str| {
+            self.file.point(
+                Error::plan(format!(
+                    "band {id} is not in the line lists and has no {name}"
+                ))
+                .remedy(format!("add {name} to its [[band]] table")),
+                keys,
+            )
+        };
+        let centre_aa = match (own.centre, listed) {
+            (Some(c), _) => unit.vacuum_aa(c, medium),
+            (None, Some(b)) => b.centre_aa,
+            (None, None) => return Err(needed("centre")),
+        };
+        let fwhm_aa = match (own.fwhm, listed) {
+            (Some(w), _) => Some(width_aa(w, own.centre, centre_aa, unit)),
+            (None, Some(b)) => Some(b.fwhm_aa),
+            (None, None) => None,
+        };
+        let window_aa = match (own.window, listed) {
+            (Some(w), _) => range_aa(w, unit, medium)
+                .map_err(|e| self.file.point(e, &[keys[0], keys[1], "window"]))?,
+            (None, Some(b)) => b.window_aa,
+            (None, None) => return Err(needed("window")),
+        };
+        if !(window_aa.0 < centre_aa && centre_aa < window_aa.1) {
+            return Err(self.file.point(
+                Error::plan(format!(
+                    "band {id}: its centre {centre_aa:.2} Å is not inside its window {:.2} to {:.2} Å (vacuum)",
+                    window_aa.0, window_aa.1
+                ))
+                .remedy("check centre, window, unit and medium"),
+                keys,
+            ));
+        }
+        Ok(BandModel {
+            id: id.to_owned(),
+            centre_aa,
+            fwhm_aa,
+            window_aa,
+            centre: own.centre_is.unwrap_or(Freedom::Auto),
+            width: own.width_is.unwrap_or(Freedom::Auto),
+            tie: own.tie.clone(),
+        })
+    }
+}

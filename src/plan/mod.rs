@@ -1,0 +1,17 @@
+//! Floor 8, an edge: the plan file (TOML) and how it becomes checked settings.
+//!
+//! May import every floor. A [`Plan`] never travels below this floor: each floor has its own small
+//! settings struct. Nothing here reads a spectrum.
+
+mod check;
+mod document;
+mod resolve;
+mod schema;
+
+pub use check::{check, default_bands_in};
+pub use document::{PlanFile, read_plan};
+pub use resolve::to_toml;
+pub use schema::{
+    AperturePlan, BandPlan, ColumnPlan, ColumnsPlan, ComaPlan, CometPlan, ContinuumPlan, DrawsPlan,
+    LifetimePlan, MeasurePlan, Plan, SpectrumPlan, TablesPlan,
+};

@@ -1,0 +1,315 @@
+//! The keys of a plan file.
+
+use crate::fit::Freedom;
+use schemars::JsonSchema;
+use serde::{Deserialize, Serialize};
+
+/// A plan: which spectra, of which comet, what to measure and how.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct Plan {
+    /// The comet and the geometry of the observation.
+    pub comet: CometPlan,
+    /// The extraction aperture.
+    pub aperture: AperturePlan,
+    /// One table per spectrum.
+    pub spectrum: Vec<SpectrumPlan>,
+    /// What to measure.
+    pub measure: MeasurePlan,
+    /// Custom bands, or changes to bands of the line lists.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub band: Vec<BandPlan>,
+    /// The continuum.
+    #[serde(default)]
+    pub continuum: ContinuumPlan,
+    /// The coma model.
+    #[serde(default)]
+    pub coma: ComaPlan,
+    /// Scale lengths of one's own.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub lifetime: Vec<LifetimePlan>,
+    /// The random draws.
+    #[serde(default)]
+    pub draws: DrawsPlan,
+    /// Tables that replace the built-in ones.
+    #[serde(default, skip_serializing_if = "TablesPlan::is_default")]
+    pub tables: TablesPlan,
+}
+
+/// The comet and the geometry of the observation.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct CometPlan {
+    /// Name for tables and figures.
+    pub label: String,
+    /// Date of the observation (UTC), free text for the report.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub date: Option<String>,
+    /// Heliocentric distance, au.
+    pub heliocentric_au: f64,
+    /// Heliocentric velocity, km/s, positive when receding.
+    pub heliocentric_km_s: f64,
+    /// Distance to the observer, au.
+    pub observer_au: f64,
+    /// Velocity to the observer, km/s, positive when receding.
+    pub observer_km_s: f64,
+}
+
+/// A circle (radius or diameter) or a slit (width and length), arcsec.
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct AperturePlan {
+    /// Radius of a circle.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub radius_arcsec: Option<f64>,
+    /// Diameter of a circle.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub diameter_arcsec: Option<f64>,
+    /// Full width of a slit.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub width_arcsec: Option<f64>,
+    /// Full length of a slit.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub length_arcsec: Option<f64>,
+    /// Offset of a slit's centre from the nucleus: across and along it.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub offset_arcsec: Option<[f64; 2]>,
+}
+
+/// One spectrum.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct SpectrumPlan {
+    /// The file, relative to the plan.
+    pub file: String,
+    /// Unit of the spectral axis: Angstrom, nm, um, cm-1, Hz …
+    pub wavelength_unit: String,
+    /// Medium of the wavelengths: vacuum or air.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub medium: Option<String>,
+    /// Unit of the flux density, for example "erg/s/cm2/Angstrom", "W/m2/um", "Jy", "mJy/arcsec2".
+    pub flux_unit: String,
+    /// Columns by name or one-based number.
+    #[serde(default, skip_serializing_if = "ColumnsPlan::is_default")]
+    pub columns: ColumnsPlan,
+    /// λ/FWHM of the instrument.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub resolving_power: Option<f64>,
+    /// Or its full width at half maximum in the wavelength unit.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub instrument_fwhm: Option<f64>,
+    /// Frame of the wavelengths: "observer" (default) or "comet".
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub frame: Option<String>,
+    /// Relative error of the flux calibration, common to the whole spectrum.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub calibration_sigma: Option<f64>,
+    /// "centre" (default) compares the profile with the sample's centre, "pixel" averages it over
+    /// the pixel.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub sampling: Option<String>,
+}
+
+/// Columns of a text spectrum.
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct ColumnsPlan {
+    /// Spectral axis.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub wavelength: Option<ColumnPlan>,
+    /// Flux density.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub flux: Option<ColumnPlan>,
+    /// Standard deviation.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub error: Option<ColumnPlan>,
+    /// Mask or quality.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub mask: Option<ColumnPlan>,
+    /// Mask values that mean a good sample (default "0").
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub mask_good: Option<Vec<String>>,
+}
+
+impl ColumnsPlan {
+    fn is_default(&self) -> bool {
+        *self == Self::default()
+    }
+}
+
+/// A column by name or one-based number.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(untagged)]
+pub enum ColumnPlan {
+    /// One-based number.
+    Number(usize),
+    /// Header name.
+    Name(String),
+}
+
+/// What to measure.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct MeasurePlan {
+    /// Band identifiers, of the line lists or of [[band]] tables.
+    pub bands: Vec<String>,
+    /// Ratios such as "CO2/H2O".
+    #[serde(default)]
+    pub ratios: Vec<String>,
+    /// "production" (default) or "column".
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub basis: Option<String>,
+    /// Signal-to-noise from which a band counts as detected (default 3).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub detection_sigma: Option<f64>,
+    /// Signal-to-noise from which centre and width of an "auto" band are fitted (default 10).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub free_shape_sigma: Option<f64>,
+}
+
+/// A custom band, or changes to a band of the line lists with the same id.
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct BandPlan {
+    /// Identifier.
+    pub id: String,
+    /// Species; without one only the flux is measured.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub species: Option<String>,
+    /// Unit of centre, fwhm and window (default: that of the first spectrum).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub unit: Option<String>,
+    /// Medium of centre and window (default: that of the first spectrum).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub medium: Option<String>,
+    /// Rest wavelength.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub centre: Option<f64>,
+    /// Intrinsic full width at half maximum, without the instrument's; 0 for a line.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub fwhm: Option<f64>,
+    /// Range fitted around the band.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub window: Option<[f64; 2]>,
+    /// Fluorescence efficiency at 1 au, photons per second and molecule.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub g_photons_s: Option<f64>,
+    /// Or in erg per second and molecule.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub g_erg_s: Option<f64>,
+    /// Relative error of g (default: that of the line lists, or 0 for a g given here).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub g_sigma: Option<f64>,
+    /// Where the g given here comes from.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub g_source: Option<String>,
+    /// "auto" (default), "free" or "held".
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub centre_is: Option<Freedom>,
+    /// "auto" (default), "free" or "held".
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub width_is: Option<Freedom>,
+    /// Bands with the same word here share velocity and width.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub tie: Option<String>,
+    /// Number of the spectrum to measure it in (default: the first that covers it).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub spectrum: Option<usize>,
+}
+
+/// The continuum.
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct ContinuumPlan {
+    /// Chebyshev order in every window (default 2; 3 in windows wider than 15 %).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub order: Option<usize>,
+    /// Unit of the ranges (default: that of the first spectrum).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub unit: Option<String>,
+    /// Medium of the ranges (default: that of the first spectrum).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub medium: Option<String>,
+    /// If given, samples away from the bands are used only inside these rest-frame ranges.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub ranges: Vec<[f64; 2]>,
+    /// Rest-frame ranges that are never used.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub exclude: Vec<[f64; 2]>,
+}
+
+/// The coma model.
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct ComaPlan {
+    /// Named set of Haser scale lengths for radicals (default "ahearn1995").
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub length_set: Option<String>,
+    /// Named law of the parents' expansion speed.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub speed_law: Option<String>,
+    /// Or the parents' expansion speed itself, km/s.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub speed_km_s: Option<f64>,
+    /// Relative error of the expansion speed, common to all species (default 0.1).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub speed_sigma: Option<f64>,
+    /// Relative error of every scale length, instead of the line lists' own.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub length_sigma: Option<f64>,
+    /// "quiet" (default) or "active" Sun, for the photo rates.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub sun: Option<String>,
+}
+
+/// Scale lengths of a species, at 1 au unless the powers say otherwise.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct LifetimePlan {
+    /// Species.
+    pub species: String,
+    /// Parent scale length at 1 au, km.
+    pub parent_km: f64,
+    /// Daughter scale length at 1 au, km; without one the species is itself the parent.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub daughter_km: Option<f64>,
+    /// Power of r_h (default 2).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub rh_power: Option<f64>,
+    /// Speed that belongs to these lengths, km/s (default: the parents' expansion speed).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub speed_km_s: Option<f64>,
+    /// Relative error of the lengths (default 0).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub sigma: Option<f64>,
+}
+
+/// The random draws.
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct DrawsPlan {
+    /// Number of draws (default 10000).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub count: Option<usize>,
+    /// Seed (default 1).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub seed: Option<u64>,
+}
+
+/// Folders of tables that replace the built-in ones.
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct TablesPlan {
+    /// Folder of line lists.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub line_lists: Option<String>,
+    /// Folder of the comparison set.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub comparison: Option<String>,
+}
+
+impl TablesPlan {
+    fn is_default(&self) -> bool {
+        *self == Self::default()
+    }
+}

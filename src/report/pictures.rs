@@ -1,0 +1,228 @@
+//! Results as figures: translates into the plain structs of [`crate::figures`].
+
+use crate::analysis::{Analysis, RatioResult, Settings};
+use crate::figures::{
+    Bounds, ComparisonComet, ComparisonValue, FitBand, FitFigure, FitPanel, StandingFigure,
+    StandingRow, ThisComet, Width, fit_svg, standing_svg,
+};
+use crate::fit::{SpectrumFit, WindowFit};
+use crate::ground::Result;
+use crate::ratio::RatioKind;
+use crate::standing::{Distribution, Entry, Known};
+
+/// Model curves are drawn with this many points per window.
+const CURVE_POINTS: usize = 600;
+/// Windows longer than this are drawn in µm.
+const MICRON_FROM_AA: f64 = 10_000.0;
+
+/// `fit.svg`: one panel per fitted window with data, continuum, bands, total and residuals.
+///
+/// # Errors
+/// When the drawing library fails.
+pub fn fit_figure(analysis: &Analysis, settings: &Settings, width: Width) -> Result<String> {
+    let windows = || {
+        analysis
+            .fits
+            .iter()
+            .flat_map(|(_, fit)| fit.windows.iter().map(move |w| (fit, w)))
+    };
+    let micron = windows().all(|(_, w)| w.window_aa.0 > MICRON_FROM_AA);
+    let (x_unit, aa) = if micron { ("µm", 1e4) } else { ("Å", 1.0) };
+    let figure = FitFigure {
+        title: heading(settings),
+        x_label: format!("Rest wavelength in vacuum ({x_unit})"),
+        y_quantity: "Flux density".to_owned(),
+        y_unit: "erg s⁻¹ cm⁻² Å⁻¹".to_owned(),
+        panels: windows()
+            .map(|(fit, window)| panel(analysis, fit, window, aa))
+            .collect(),
+    };
+    fit_svg(&figure, width)
+}
+
+fn heading(settings: &Settings) -> String {
+    match &settings.date {
+        Some(date) => format!("{}, {date}", settings.label),
+        None => settings.label.clone(),
+    }
+}
+
+fn panel(analysis: &Analysis, fit: &SpectrumFit, window: &WindowFit, aa: f64) -> FitPanel {
+    let (low, high) = window.window_aa;
+    let grid: Vec<f64> = (0..CURVE_POINTS)
+        .map(|i| low + (high - low) * i as f64 / (CURVE_POINTS - 1) as f64)
+        .collect();
+    let mut total: Vec<f64> = grid.iter().map(|x| window.continuum_at(*x)).collect();
+    let continuum = total.clone();
+    let mut bands = Vec::new();
+    for id in &window.bands {
+        let Some(band) = fit.bands.iter().find(|b| b.id == *id) else {
+            continue;
+        };
+        let y: Vec<f64> = grid.iter().map(|x| band.at(*x)).collect();
+        for (t, v) in total.iter_mut().zip(&y) {
+            *t += v;
+        }
+        bands.push(FitBand {
+            label: band_name(analysis, id),
+            y,
+        });
+    }
+    FitPanel {
+        caption: if window.errors_estimated {
+            "errors estimated from the scatter".to_owned()
+        } else {
+            format!("χ²/ν = {:.2}", window.chi2 / window.dof as f64)
+        },
+        x: window
+            .samples
+            .iter()
+            .map(|s| s.wavelength_aa / aa)
+            .collect(),
+        y: window.samples.iter().map(|s| s.flux_erg_s_cm2_aa).collect(),
+        sigma: window
+            .samples
+            .iter()
+            .map(|s| s.sigma_erg_s_cm2_aa)
+            .collect(),
+        used: window.samples.iter().map(|s| s.used).collect(),
+        model: window
+            .samples
+            .iter()
+            .map(|s| s.total_erg_s_cm2_aa)
+            .collect(),
+        grid_x: grid.iter().map(|x| x / aa).collect(),
+        continuum,
+        total,
+        bands,
+        left_out: gaps(window, aa),
+    }
+}
+
+/// Species with subscripts, or the identifier of a band without a species.
+fn band_name(analysis: &Analysis, id: &str) -> String {
+    analysis
+        .bands
+        .iter()
+        .find(|b| b.fit.id == id)
+        .and_then(|b| b.species.as_ref())
+        .map_or_else(|| id.to_owned(), |s| s.pretty())
+}
+
+/// Ranges of neighbouring samples that the fit did not use.
+fn gaps(window: &WindowFit, aa: f64) -> Vec<(f64, f64)> {
+    let mut out: Vec<(f64, f64)> = Vec::new();
+    let samples = &window.samples;
+    let mut i = 0;
+    while i < samples.len() {
+        let start = i;
+        while i < samples.len() && !samples[i].used {
+            i += 1;
+        }
+        if i > start + 1 {
+            out.push((
+                samples[start].wavelength_aa / aa,
+                samples[i - 1].wavelength_aa / aa,
+            ));
+        }
+        i += 1;
+    }
+    out
+}
+
+/// `standing.svg`: each ratio on the comparison set; `None` when no ratio was asked for.
+///
+/// # Errors
+/// When the drawing library fails.
+pub fn standing_figure(
+    analysis: &Analysis,
+    settings: &Settings,
+    width: Width,
+) -> Result<Option<String>> {
+    let rows = || {
+        let drawn =
+            |r: &&RatioResult| !r.known.is_empty() || r.ratio.kind != RatioKind::Unconstrained;
+        analysis.ratios.iter().filter(drawn)
+    };
+    if rows().next().is_none() {
+        return Ok(None);
+    }
+    let mut classes: Vec<String> = rows()
+        .flat_map(|r| r.known.iter().map(|e| e.class.clone()))
+        .collect();
+    classes.sort();
+    classes.dedup();
+    let figure = StandingFigure {
+        title: String::new(),
+        this_label: heading(settings),
+        rows: rows().map(|r| row(r, &classes)).collect(),
+        classes,
+    };
+    standing_svg(&figure, width).map(Some)
+}
+
+fn row(result: &RatioResult, classes: &[String]) -> StandingRow {
+    let ratio = &result.ratio;
+    let limits = result
+        .known
+        .iter()
+        .filter(|e| e.known != Known::Value)
+        .count();
+    let sample: Vec<_> = result.known.iter().map(Entry::censored).collect();
+    let this = match (ratio.kind, ratio.interval, ratio.limit) {
+        (RatioKind::Value, Some(i), _) if i.median > 0.0 => ThisComet::Measured {
+            median: i.median,
+            inner: Bounds {
+                low: i.low68,
+                high: i.high68,
+            },
+            outer: Bounds {
+                low: i.low95,
+                high: i.high95,
+            },
+        },
+        (RatioKind::Upper, _, Some(limit)) => ThisComet::UpperLimit(limit),
+        (RatioKind::Lower, _, Some(limit)) => ThisComet::LowerLimit(limit),
+        _ => ThisComet::Unconstrained,
+    };
+    StandingRow {
+        ratio: format!("{}/{}", ratio.of.pretty(), ratio.to.pretty()),
+        comets: result.known.iter().map(|e| comet(e, classes)).collect(),
+        cumulative: Distribution::estimate(&sample).map_or_else(Vec::new, |d| d.steps().collect()),
+        this,
+        count_text: match (result.known.len(), limits) {
+            (1, 0) => "1 comet".to_owned(),
+            (n, 0) => format!("{n} comets"),
+            (n, 1) => format!("{n} comets, 1 limit"),
+            (n, k) => format!("{n} comets, {k} limits"),
+        },
+        place_text: result.standing.map_or_else(String::new, |s| {
+            format!(
+                "percentile {:.0} ({:.0}–{:.0})",
+                s.percentile, s.percentile_low, s.percentile_high
+            )
+        }),
+    }
+}
+
+fn comet(entry: &Entry, classes: &[String]) -> ComparisonComet {
+    let value = match entry.known {
+        Known::Value => {
+            let (minus, plus) = entry.errors.unwrap_or((0.0, 0.0));
+            ComparisonValue::Measured {
+                value: entry.value,
+                bar: Bounds {
+                    low: entry.value - minus,
+                    high: entry.value + plus,
+                },
+            }
+        }
+        Known::Upper => ComparisonValue::UpperLimit(entry.value),
+        Known::Lower => ComparisonValue::LowerLimit(entry.value),
+    };
+    ComparisonComet {
+        name: entry.comet.clone(),
+        class: classes.iter().position(|c| *c == entry.class).unwrap_or(0),
+        value,
+    }
+}

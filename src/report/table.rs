@@ -1,0 +1,203 @@
+//! The table for people.
+
+use crate::analysis::{Analysis, BandResult, RatioResult, Settings, SpeciesResult};
+use crate::ground::Measured;
+use crate::ratio::RatioKind;
+use comfy_table::presets;
+use comfy_table::{CellAlignment, Table};
+
+/// A compact summary: geometry, bands, species, ratios with their standing, caveats.
+pub fn summary_table(analysis: &Analysis, settings: &Settings) -> String {
+    let g = settings.geometry;
+    let mut out = format!(
+        "{}{}   r_h {} au, ṙ_h {:+} km/s   Δ {} au, Δ̇ {:+} km/s\n\n",
+        settings.label,
+        settings
+            .date
+            .as_ref()
+            .map_or_else(String::new, |d| format!(", {d}")),
+        g.heliocentric_au,
+        g.heliocentric_km_s,
+        g.observer_au,
+        g.observer_km_s
+    );
+    out.push_str(&bands(&analysis.bands));
+    if !analysis.species.is_empty() {
+        out.push('\n');
+        out.push_str(&species(&analysis.species));
+    }
+    if !analysis.ratios.is_empty() {
+        out.push('\n');
+        out.push_str(&ratios(&analysis.ratios));
+    }
+    if !analysis.caveats.is_empty() {
+        out.push_str("\nCaveats\n");
+        for caveat in &analysis.caveats {
+            out.push_str(&format!("  {}: {caveat}\n", caveat.code()));
+        }
+    }
+    out
+}
+
+fn grid(header: &[&str], rows: Vec<Vec<String>>) -> String {
+    let mut table = Table::new();
+    table.load_style(presets::NOTHING).set_header(header);
+    for row in rows {
+        table.add_row(row);
+    }
+    for (i, column) in table.column_iter_mut().enumerate() {
+        column.set_padding((0, 2));
+        if i > 0 {
+            column.set_cell_alignment(CellAlignment::Right);
+        }
+    }
+    let text = table.to_string();
+    text.lines()
+        .map(|l| l.trim_end().to_owned() + "\n")
+        .collect()
+}
+
+fn bands(list: &[BandResult]) -> String {
+    let rows = list
+        .iter()
+        .map(|b| {
+            let f = &b.fit;
+            let flux = if f.detected {
+                pair(f.flux_erg_s_cm2)
+            } else {
+                format!(
+                    "< {}",
+                    f.flux_limit_erg_s_cm2.map_or_else(String::new, power)
+                )
+            };
+            vec![
+                f.id.clone(),
+                format!("{:.2}", f.centre_aa),
+                format!("{:.2}", f.fwhm_aa),
+                flux,
+                format!("{:.1}", f.flux_erg_s_cm2.signal_to_noise()),
+                b.efficiency
+                    .as_ref()
+                    .map_or_else(|| "–".to_owned(), |g| format!("{:.3e}", g.g_photons_s)),
+                b.column_cm2
+                    .filter(|_| f.detected)
+                    .map_or_else(|| "–".to_owned(), pair),
+            ]
+        })
+        .collect();
+    grid(
+        &[
+            "band",
+            "centre Å",
+            "FWHM Å",
+            "flux erg/s/cm²",
+            "S/N",
+            "g photons/s",
+            "column cm⁻²",
+        ],
+        rows,
+    )
+}
+
+fn species(list: &[SpeciesResult]) -> String {
+    let rows = list
+        .iter()
+        .map(|s| {
+            let shown = |m: Measured| {
+                if s.detected {
+                    pair(m)
+                } else {
+                    format!("({})", pair(m))
+                }
+            };
+            vec![
+                s.species.to_string(),
+                shown(s.column_cm2),
+                s.production_per_s.map_or_else(|| "–".to_owned(), shown),
+            ]
+        })
+        .collect();
+    grid(&["species", "column cm⁻²", "Q s⁻¹"], rows)
+}
+
+fn ratios(list: &[RatioResult]) -> String {
+    let rows = list
+        .iter()
+        .map(|r| {
+            let name = format!("{}/{}", r.ratio.of, r.ratio.to);
+            let (value, range) = match (r.ratio.kind, r.ratio.interval) {
+                (RatioKind::Value, Some(i)) => (
+                    plain(i.median),
+                    format!("{} – {}", plain(i.low68), plain(i.high68)),
+                ),
+                (RatioKind::Upper, _) => (
+                    format!("< {}", r.ratio.limit.map_or_else(String::new, plain)),
+                    "99.7 % limit".into(),
+                ),
+                (RatioKind::Lower, _) => (
+                    format!("> {}", r.ratio.limit.map_or_else(String::new, plain)),
+                    "99.7 % limit".into(),
+                ),
+                _ => ("unconstrained".to_owned(), String::new()),
+            };
+            let standing = match r.standing {
+                Some(s) => format!(
+                    "above {:.0} ({:.0}–{:.0}) % of {} comets",
+                    s.percentile, s.percentile_low, s.percentile_high, s.comets
+                ),
+                None if r.known.is_empty() => "nothing to compare with".to_owned(),
+                None => format!("{} comets to compare with", r.known.len()),
+            };
+            vec![name, value, range, standing]
+        })
+        .collect();
+    grid(&["ratio", "median", "68 % interval", "standing"], rows)
+}
+
+/// Value ± sigma with one power of ten and two digits of the error.
+fn pair(m: Measured) -> String {
+    if !(m.value.is_finite() && m.sigma.is_finite()) {
+        return "–".to_owned();
+    }
+    let largest = m.value.abs().max(m.sigma);
+    if largest == 0.0 {
+        return "0".to_owned();
+    }
+    let exponent = largest.log10().floor() as i32;
+    let unit = 10f64.powi(exponent);
+    let digits = (1 - (m.sigma / unit).log10().floor() as i32).clamp(0, 6) as usize;
+    format!(
+        "({:.digits$} ± {:.digits$})e{exponent}",
+        m.value / unit,
+        m.sigma / unit
+    )
+}
+
+fn power(v: f64) -> String {
+    format!("{v:.2e}")
+}
+
+/// Three digits, plain between 0.001 and 1000.
+fn plain(v: f64) -> String {
+    if v == 0.0 || !(1e-3..1e3).contains(&v.abs()) {
+        return format!("{v:.2e}");
+    }
+    let digits = (2 - v.abs().log10().floor() as i32).max(0) as usize;
+    format!("{v:.digits$}")
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn numbers_for_people() {
+        assert_eq!(
+            pair(Measured::new(1.234e-14, 5.6e-16)),
+            "(1.234 ± 0.056)e-14"
+        );
+        assert_eq!(pair(Measured::new(-2.0, 30.0)), "(-0.2 ± 3.0)e1");
+        assert_eq!(plain(0.12345), "0.123");
+        assert_eq!(plain(0.000012), "1.20e-5");
+    }
+}
