@@ -196,13 +196,16 @@ fn write(
         ("ratios.csv", report::ratios_csv(analysis).into_bytes()),
         ("fit.csv", report::fit_csv(analysis).into_bytes()),
         ("plan.resolved.toml", to_toml(resolved)?.into_bytes()),
-        (
-            "fit.svg",
-            report::fit_figure(analysis, settings, Width::Double)?.into_bytes(),
-        ),
     ];
-    if let Some(standing) = report::standing_figure(analysis, settings, Width::Double)? {
-        files.push(("standing.svg", standing.into_bytes()));
+    for (width, fit, standing) in [
+        (Width::Double, "fit.svg", "standing.svg"),
+        (Width::Single, "fit-narrow.svg", "standing-narrow.svg"),
+    ] {
+        let svg = report::fit_figure(analysis, settings, width)?;
+        files.push((fit, svg.into_bytes()));
+        if let Some(svg) = report::standing_figure(analysis, settings, width)? {
+            files.push((standing, svg.into_bytes()));
+        }
     }
     report::write_all(folder, &files)
 }

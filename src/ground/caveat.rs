@@ -176,7 +176,8 @@ impl fmt::Display for Caveat {
                 "{band}: resolved rotational structure is fitted with one Gaussian; the flux can be off by more than its error"
             ),
             Self::ThinComparison { ratio, comets } => {
-                write!(f, "{ratio}: only {comets} comets to compare with")
+                let noun = if *comets == 1 { "comet" } else { "comets" };
+                write!(f, "{ratio}: only {comets} {noun} to compare with")
             }
             Self::Other { text, .. } => f.write_str(text),
         }

@@ -9,6 +9,7 @@ use crate::fit::{SpectrumFit, WindowFit};
 use crate::ground::Result;
 use crate::ratio::RatioKind;
 use crate::standing::{Distribution, Entry, Known};
+use crate::tables::DynamicalClass;
 
 /// Model curves are drawn with this many points per window.
 const CURVE_POINTS: usize = 600;
@@ -147,11 +148,8 @@ pub fn standing_figure(
     if rows().next().is_none() {
         return Ok(None);
     }
-    let mut classes: Vec<String> = rows()
-        .flat_map(|r| r.known.iter().map(|e| e.class.clone()))
-        .collect();
-    classes.sort();
-    classes.dedup();
+    // Always the same list, so that a class keeps its mark from figure to figure.
+    let classes: Vec<String> = DynamicalClass::words().map(str::to_owned).collect();
     let figure = StandingFigure {
         title: String::new(),
         this_label: heading(settings),

@@ -142,16 +142,26 @@ fn ratios(list: &[RatioResult]) -> String {
             };
             let standing = match r.standing {
                 Some(s) => format!(
-                    "above {:.0} ({:.0}–{:.0}) % of {} comets",
-                    s.percentile, s.percentile_low, s.percentile_high, s.comets
+                    "above {:.0} ({:.0}–{:.0}) % of {}",
+                    s.percentile,
+                    s.percentile_low,
+                    s.percentile_high,
+                    comets(s.comets)
                 ),
                 None if r.known.is_empty() => "nothing to compare with".to_owned(),
-                None => format!("{} comets to compare with", r.known.len()),
+                None => format!("{} to compare with", comets(r.known.len())),
             };
             vec![name, value, range, standing]
         })
         .collect();
     grid(&["ratio", "median", "68 % interval", "standing"], rows)
+}
+
+fn comets(count: usize) -> String {
+    match count {
+        1 => "1 comet".to_owned(),
+        n => format!("{n} comets"),
+    }
 }
 
 /// Value ± sigma with one power of ten and two digits of the error.

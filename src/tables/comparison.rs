@@ -56,6 +56,11 @@ impl DynamicalClass {
         ("other", Self::Other),
     ];
 
+    /// The words of all classes, in a fixed order.
+    pub fn words() -> impl Iterator<Item = &'static str> {
+        Self::WORDS.iter().map(|(word, _)| *word)
+    }
+
     /// The word of the tables, for example `JFC`.
     pub fn as_str(self) -> &'static str {
         let named = Self::WORDS.iter().find(|(_, class)| *class == self);
