@@ -152,7 +152,8 @@ impl Scene {
     /// Observed vacuum wavelength Å, flux, error.
     fn samples(&self, tables: &Tables) -> Vec<(f64, f64, f64)> {
         let bands = self.bands(tables);
-        let doppler = 1.0 + self.observer_km_s / LIGHT_KM_S;
+        let beta = self.observer_km_s / LIGHT_KM_S;
+        let doppler = ((1.0 + beta) / (1.0 - beta)).sqrt();
         let mut rng = Xoshiro256PlusPlus::seed_from_u64(self.seed);
         self.wavelengths_aa()
             .into_iter()

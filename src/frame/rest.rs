@@ -66,9 +66,10 @@ impl RestSpectrum {
     }
 }
 
-/// Shifts to the comet's rest frame, λ_rest = λ/(1 + v/c), and multiplies a surface brightness by
-/// the aperture's solid angle. Flux densities are multiplied by (1 + v/c) so that a band keeps the
-/// flux it has in the observer's frame, which is what the distance law needs.
+/// Shifts to the comet's rest frame, λ_rest = λ/s with the relativistic radial Doppler factor
+/// s = √((1 + β)/(1 − β)), β = v/c, and multiplies a surface brightness by the aperture's solid
+/// angle. Flux densities are multiplied by s so that a band keeps the flux it has in the observer's
+/// frame, which is what the distance law needs.
 pub fn to_rest(
     spectrum: &Spectrum,
     frame: Frame,
@@ -80,7 +81,8 @@ pub fn to_rest(
         Frame::Comet => 0.0,
         Frame::Shifted { velocity_km_s } => velocity_km_s,
     };
-    let stretch = 1.0 + velocity_km_s / LIGHT_KM_S;
+    let beta = velocity_km_s / LIGHT_KM_S;
+    let stretch = ((1.0 + beta) / (1.0 - beta)).sqrt();
     let area = if spectrum.per_arcsec2() {
         aperture.area_arcsec2()
     } else {

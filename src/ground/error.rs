@@ -135,7 +135,8 @@ impl fmt::Display for Error {
             (None, None) => {}
         }
         if let Some(excerpt) = &e.excerpt {
-            for line in excerpt.lines() {
+            let blank = excerpt.lines().next().is_none_or(|l| l.trim().is_empty());
+            for line in excerpt.lines().take(if blank { 0 } else { usize::MAX }) {
                 write!(f, "\n    {line}")?;
             }
         }

@@ -187,7 +187,30 @@ fn explain(message: &str) -> (String, Option<String>) {
     let hint = message
         .contains("invalid type")
         .then(|| "give the key a value of that type".to_owned());
-    (message.to_owned(), hint)
+    (plain_types(message), hint)
+}
+
+/// Names of types as a user knows them.
+fn plain_types(message: &str) -> String {
+    [
+        ("expected f64", "expected a number"),
+        ("expected usize", "expected a whole number, not negative"),
+        ("expected u64", "expected a whole number, not negative"),
+        ("expected a sequence", "expected a list [...]"),
+        (
+            "expected an array of length 2",
+            "expected two numbers [low, high]",
+        ),
+        (
+            "data did not match any variant of untagged enum ColumnPlan",
+            "a column is given by its number or its name",
+        ),
+        ("floating point", "number"),
+    ]
+    .iter()
+    .fold(message.to_owned(), |text, (from, to)| {
+        text.replace(from, to)
+    })
 }
 
 #[cfg(test)]

@@ -245,7 +245,7 @@ impl Columns {
             let used = numbers && !flagged;
             if used && sigma.is_some_and(|s| s <= 0.0) {
                 let error = Error::input(format!(
-                    "the error {} of a used sample is not positive",
+                    "the error {:e} of a used sample is not positive",
                     sigma.unwrap_or(0.0)
                 ))
                 .remedy("give a positive error, or mark the sample in a mask column");

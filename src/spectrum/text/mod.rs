@@ -112,7 +112,9 @@ fn read(path: &Path, label: &str, input: impl BufRead, layout: &TextLayout) -> R
 
 fn unreadable(path: &Path, cause: &std::io::Error) -> Error {
     Error::io("cannot read", path, cause).remedy(match cause.kind() {
-        std::io::ErrorKind::NotFound => "check the name; it is taken from the current folder",
+        std::io::ErrorKind::NotFound => {
+            "check the name; names in a plan are taken from the folder of the plan"
+        }
         std::io::ErrorKind::PermissionDenied => "check the permissions of the file",
         _ => "check that the file can be opened with another program",
     })
