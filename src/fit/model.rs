@@ -4,7 +4,7 @@
 //! shape slot is either a shift β (centre = λ₀(1 + β)) or a stretch s (σ = s σ₀); bands that share
 //! velocity or width share the slot, and a band whose shape is held has none.
 
-use super::basis::{chebyshev, to_unit_interval};
+use super::basis::to_unit_interval;
 use super::profile::{ProfileValue, REACH_SIGMA, Sampling, gaussian, gaussian_over_pixel};
 use super::solver::Residuals;
 use crate::ground::Result;
@@ -70,10 +70,16 @@ impl WindowModel {
         let n = x_aa.len();
         let weights: Vec<f64> = sigma.iter().map(|s| 1.0 / s).collect();
         let mut basis = vec![0.0; n * (order + 1)];
+        basis[..n].copy_from_slice(&weights);
         for (i, x) in x_aa.iter().enumerate() {
-            let values = chebyshev(to_unit_interval(*x, window_aa), order);
-            for (c, v) in values.into_iter().enumerate() {
-                basis[c * n + i] = v * weights[i];
+            // Chebyshev recurrence, on weighted values because it is linear.
+            let t = to_unit_interval(*x, window_aa);
+            for c in 1..=order {
+                let one = basis[(c - 1) * n + i];
+                basis[c * n + i] = match c {
+                    1 => t * one,
+                    _ => 2.0 * t * one - basis[(c - 2) * n + i],
+                };
             }
         }
         Self {

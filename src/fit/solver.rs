@@ -8,7 +8,7 @@
 //! from a QR factorisation, which keeps twice the digits of the normal equations.
 
 use crate::ground::{Error, Result};
-use nalgebra::{DMatrix, DVector};
+use nalgebra::{Cholesky, DMatrix, DVector, Dyn};
 
 /// A problem min Σ r², r = (data − model)/σ.
 pub trait Residuals {
@@ -347,17 +347,16 @@ impl Solver {
     }
 }
 
-/// Covariance (JᵀJ)⁻¹ of the parameters listed in `free` from the weighted derivative columns, by
-/// QR with columns scaled to unit length. Rows and columns follow the order of `free`.
+/// Covariance (JᵀJ)⁻¹ of the parameters listed in `free` from the weighted derivative columns,
+/// scaled to unit length: by Cholesky where that keeps nine digits, else by QR. Rows and columns
+/// follow the order of `free`.
 ///
 /// # Errors
 /// Columns that are linearly dependent, within rounding.
 pub fn covariance(columns: &[f64], n: usize, free: &[usize]) -> Result<DMatrix<f64>> {
     let m = free.len();
-    let scales: Vec<f64> = free
-        .iter()
-        .map(|&i| square_sum(&columns[i * n..(i + 1) * n]).sqrt())
-        .collect();
+    let column = |a: usize| &columns[free[a] * n..(free[a] + 1) * n];
+    let scales: Vec<f64> = (0..m).map(|a| square_sum(column(a)).sqrt()).collect();
     let degenerate = || {
         Error::compute("the parameters cannot be told apart by this spectrum (singular fit)")
             .remedy("leave out one of the blended bands, hold its shape, or lower the order")
@@ -365,18 +364,29 @@ pub fn covariance(columns: &[f64], n: usize, free: &[usize]) -> Result<DMatrix<f
     if scales.iter().any(|s| *s <= 0.0 || !s.is_finite()) {
         return Err(degenerate());
     }
-    let jacobian = DMatrix::from_fn(n, m, |r, c| columns[free[c] * n + r] / scales[c]);
-    let r = jacobian.qr().r();
-    let smallest = (0..m)
-        .map(|i| r[(i, i)].abs())
-        .fold(f64::INFINITY, f64::min);
-    if smallest < 1e-12 {
-        return Err(degenerate());
-    }
-    let inverse = r
-        .solve_upper_triangular(&DMatrix::identity(m, m))
-        .ok_or_else(degenerate)?;
-    let mut cov = &inverse * inverse.transpose();
+    let gram = DMatrix::from_fn(m, m, |a, b| {
+        if b > a {
+            0.0
+        } else {
+            dot(column(a), column(b)) / (scales[a] * scales[b])
+        }
+    });
+    let well_posed = |c: &Cholesky<f64, Dyn>| (0..m).all(|a| c.l_dirty()[(a, a)] > 1e-3);
+    let mut cov = match Cholesky::new(gram).filter(well_posed) {
+        Some(cholesky) => cholesky.inverse(),
+        None => {
+            let jacobian = DMatrix::from_fn(n, m, |r, a| column(a)[r] / scales[a]);
+            let r = jacobian.qr().r();
+            let pivots = (0..m).map(|i| r[(i, i)].abs());
+            if pivots.fold(f64::INFINITY, f64::min) < 1e-12 {
+                return Err(degenerate());
+            }
+            let inverse = r
+                .solve_upper_triangular(&DMatrix::identity(m, m))
+                .ok_or_else(degenerate)?;
+            &inverse * inverse.transpose()
+        }
+    };
     for a in 0..m {
         for b in 0..m {
             cov[(a, b)] /= scales[a] * scales[b];

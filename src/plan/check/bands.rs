@@ -3,6 +3,7 @@
 use super::Checker;
 use super::convert::{range_aa, width_aa};
 use crate::analysis::BandSettings;
+use crate::coma::{line_centre_opacity_cm2, strongest_line_fraction};
 use crate::fit::{BandModel, Freedom};
 use crate::frame::Geometry;
 use crate::ground::{Error, Result, Species, did_you_mean};
@@ -78,13 +79,44 @@ impl Checker<'_> {
             ));
         }
         Ok(BandSettings {
-            opacity_cm2: None,
+            opacity_cm2: listed.and_then(|b| self.opacity_cm2(b, geometry)),
             structured_fwhm_aa: listed.filter(|b| b.structured).map(|b| b.fwhm_aa),
             spectrum: own.spectrum.map(|i| i - 1),
             model,
             species,
             efficiency,
         })
+    }
+
+    /// Line-centre opacity of the strongest line of a parallel band of a linear molecule: rotational
+    /// temperature 60 K r_h⁻¹ between 10 and 150 K, lines as wide as the expansion is fast (common
+    /// practice; good to a factor of about two, which is enough to warn).
+    fn opacity_cm2(&self, band: &Band, geometry: &Geometry) -> Option<f64> {
+        let constant = |quantity: &str| {
+            self.tables
+                .strengths()
+                .iter()
+                .find(|s| s.species == band.species && s.band == "ground" && s.quantity == quantity)
+                .map(|s| s.value)
+        };
+        let linear = ["CO", "CO2", "HCN", "OCS"].contains(&band.species.as_str());
+        let b_cm1 = constant("B lower").filter(|_| linear)?;
+        let strength = self.tables.strengths().iter().find(|s| {
+            s.species == band.species
+                && s.quantity == "strength"
+                && (s.band.starts_with("nu3") || s.band.starts_with("v1-0"))
+        })?;
+        let law = self
+            .tables
+            .speed_law(crate::plan::resolve::DEFAULT_SPEED_LAW)
+            .ok()?;
+        let temperature_k = (60.0 / geometry.heliocentric_au).clamp(10.0, 150.0);
+        let share = strongest_line_fraction(b_cm1, temperature_k, band.species.as_str() == "CO2");
+        Some(line_centre_opacity_cm2(
+            strength.per_molecule() * share,
+            1e8 / band.centre_aa,
+            law.at_km_s(geometry.heliocentric_au),
+        ))
     }
 
     fn unknown_band(&self, id: &str) -> Error {
