@@ -85,7 +85,7 @@ fn sigma(
     }
     if zeros > 0 {
         understood.assumed.push(format!(
-            "{zeros} samples where {source} is 0 hold no data and are left out"
+            "samples where {source} is 0 hold no data and are left out: {zeros}"
         ));
     }
     values

@@ -1,13 +1,13 @@
 //! A spectrum in a binary table: one sample per row, or the vectors in the cells of one row.
 
+use super::FitsLayout;
 use super::columns::{self, ColumnInfo, Picks, SURFACE, fold};
 use super::numbers::{Coding, MaskRule, Sink};
 use super::parts::{Kind, PartInfo};
 use super::source::{Opened, refused};
 use super::units::{self, Errors, Raw};
 use super::words::Words;
-use super::{ErrorKind, FitsLayout};
-use crate::ground::{Error, Medium, Result};
+use crate::ground::{Error, Medium, Result, WavelengthUnit};
 use fits_well::table::ColumnData;
 
 /// Bytes read at a time.
@@ -122,14 +122,7 @@ impl Table<'_> {
         let mut assumed = Vec::new();
         let wavelength = &self.columns[picks.wavelength];
         let flux = &self.columns[picks.flux];
-        let said = if wavelength.is_log10() {
-            None
-        } else {
-            wavelength.unit.as_deref()
-        };
-        let said = said.or(wavelength.is_log10().then_some("Angstrom"));
-        let place = format!("TUNIT{}", wavelength.index + 1);
-        let wavelength_unit = units::wavelength(layout, said, &place, &mut assumed)?;
+        let wavelength_unit = wavelength_unit(wavelength, layout, &mut assumed)?;
         let medium = units::medium(layout, wavelength_unit, &said_medium(wavelength, words)?)?;
         let place = format!("TUNIT{}", flux.index + 1);
         let said = flux.unit.as_deref().or(words.text_inherited("BUNIT"));
@@ -143,40 +136,26 @@ impl Table<'_> {
             })
             .transpose()?;
         let mask = picks.mask.map(|m| &self.columns[m]);
-        let mut read = self.columns_of(file, wavelength, flux, errors, mask, layout)?;
-        let flags = mask.map(|m| {
-            (
-                read.pop().map(Sink::into_flags).unwrap_or_default(),
-                m.title(),
-            )
-        });
-        let errors = errors.zip(meaning).map(|(c, (kind, unit))| Errors {
-            values: read.pop().map(Sink::into_numbers).unwrap_or_default(),
-            kind,
-            unit,
-            source: c.title(),
-        });
-        let flux = read.pop().map(Sink::into_numbers).unwrap_or_default();
-        let mut axis = read.pop().map(Sink::into_numbers).unwrap_or_default();
-        let mut axis_words = wavelength.title();
-        if wavelength.is_log10() {
-            axis.iter_mut().for_each(|v| *v = 10_f64.powf(*v));
-            axis_words += ", decimal logarithm";
-            assumed.push(format!(
-                "{} is log10 of a length in {wavelength_unit}",
-                wavelength.title()
-            ));
-        }
-        note_scale(errors.as_ref(), &mut assumed);
+        let mut read = self
+            .columns_of(file, wavelength, flux, errors, mask, layout)?
+            .into_iter();
+        let mut numbers = || read.next().map(Sink::into_numbers).unwrap_or_default();
         Ok(Raw {
-            axis,
-            axis_words,
+            axis: axis_values(wavelength, numbers()),
+            axis_words: axis_words(wavelength),
             wavelength_unit,
             medium,
-            flux,
+            flux: numbers(),
             flux_unit,
-            errors,
-            flags,
+            errors: errors.zip(meaning).map(|(c, (kind, unit))| Errors {
+                values: numbers(),
+                kind,
+                unit,
+                source: c.title(),
+            }),
+            flags: mask
+                .zip(read.next())
+                .map(|(m, f)| (f.into_flags(), m.title())),
             assumed,
         })
     }
@@ -355,10 +334,33 @@ fn said_medium(column: &ColumnInfo, words: Words) -> Result<Vec<(Medium, String)
     Ok(said)
 }
 
-fn note_scale(errors: Option<&Errors>, assumed: &mut Vec<String>) {
-    if let Some(errors) = errors
-        && errors.kind == ErrorKind::InverseVariance
-    {
-        assumed.push(format!("{}: 0 means no data", errors.source));
+fn wavelength_unit(
+    column: &ColumnInfo,
+    layout: &FitsLayout,
+    assumed: &mut Vec<String>,
+) -> Result<WavelengthUnit> {
+    let place = format!("TUNIT{}", column.index + 1);
+    if !column.is_log10() {
+        return units::wavelength(layout, column.unit.as_deref(), &place, assumed);
     }
+    // The unit of a logarithm is seldom one that can be read; survey files mean Å.
+    let unit = units::wavelength(layout, Some("Angstrom"), &place, assumed)?;
+    assumed.push(format!("{} is log10 of a length in {unit}", column.title()));
+    Ok(unit)
+}
+
+fn axis_values(column: &ColumnInfo, mut values: Vec<f64>) -> Vec<f64> {
+    if column.is_log10() {
+        values.iter_mut().for_each(|v| *v = 10_f64.powf(*v));
+    }
+    values
+}
+
+fn axis_words(column: &ColumnInfo) -> String {
+    let log = if column.is_log10() {
+        ", decimal logarithm"
+    } else {
+        ""
+    };
+    format!("{}{log}", column.title())
 }
