@@ -11,11 +11,13 @@ mod cn;
 mod cn_ground;
 mod cn_red;
 mod quality;
+mod rotational;
 mod sun;
 mod system;
 
 pub use atoms::{atom, bundled_atoms};
 pub use bands::{InfraredBand, infrared_bands};
 pub use cn::cn_violet;
+pub use rotational::{RotationalBand, ShapeLine, rotational_lines};
 pub use sun::{SolarSpectrum, sun};
 pub use system::{Level, LevelSystem, Line, LineKind};
