@@ -203,22 +203,53 @@ impl WindowModel {
     fn add_band(&self, band: usize, p: &[f64], residuals: &mut [f64], columns: &mut [f64]) {
         let n = self.x_aa.len();
         let first_shape = self.linear();
-        let (shift, stretch) = (self.components[band].shift, self.components[band].stretch);
+        let component = &self.components[band];
         let (centre, sigma) = self.shape_of(band, &p[first_shape..]);
         let flux = p[self.flux_index(band)];
         let reach = self.reach(centre, sigma);
         let (linear, shape) = columns.split_at_mut(first_shape * n);
-        let flux_column = &mut linear[self.flux_index(band) * n..][..n];
-        for i in reach.clone() {
-            let v = self.profile(i, centre, sigma);
-            let w = self.weights[i];
-            flux_column[i] = v.value * w;
-            residuals[i] -= flux * v.value * w;
-            if let Slot::Fitted(s) = shift {
-                shape[s * n + i] += flux * v.by_centre * self.components[band].centre_aa * w;
+        let flux_column = &mut linear[self.flux_index(band) * n..][reach.clone()];
+        if self.sampling == Sampling::Pixel {
+            for (out, i) in flux_column.iter_mut().zip(reach) {
+                let v = self.profile(i, centre, sigma);
+                let w = self.weights[i];
+                *out = v.value * w;
+                residuals[i] -= flux * v.value * w;
+                if let Slot::Fitted(s) = component.shift {
+                    shape[s * n + i] += flux * v.by_centre * component.centre_aa * w;
+                }
+                if let Slot::Fitted(s) = component.stretch {
+                    shape[s * n + i] += flux * v.by_sigma * component.sigma_aa * w;
+                }
             }
-            if let Slot::Fitted(s) = stretch {
-                shape[s * n + i] += flux * v.by_sigma * self.components[band].sigma_aa * w;
+            return;
+        }
+        // Plain slices and one thing per loop, so that all but the exponential is vectorised.
+        let x = &self.x_aa[reach.clone()];
+        for ((out, x), w) in flux_column
+            .iter_mut()
+            .zip(x)
+            .zip(&self.weights[reach.clone()])
+        {
+            *out = gaussian(*x, centre, sigma).value * w;
+        }
+        for (r, v) in residuals[reach.clone()].iter_mut().zip(&*flux_column) {
+            *r -= flux * v;
+        }
+        let inv = 1.0 / sigma;
+        if let Slot::Fitted(s) = component.shift {
+            let scale = flux * component.centre_aa * inv;
+            let target = &mut shape[s * n..][reach.clone()];
+            for ((out, v), x) in target.iter_mut().zip(&*flux_column).zip(x) {
+                *out += scale * v * ((x - centre) * inv);
+            }
+        }
+        if let Slot::Fitted(s) = component.stretch {
+            let scale = flux * component.sigma_aa * inv;
+            let target = &mut shape[s * n..][reach];
+            for ((out, v), x) in target.iter_mut().zip(&*flux_column).zip(x) {
+                let u = (x - centre) * inv;
+                *out += scale * v * (u * u - 1.0);
             }
         }
     }

@@ -151,7 +151,7 @@ pub enum ColumnPlan {
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
 #[serde(deny_unknown_fields)]
 pub struct MeasurePlan {
-    /// Band identifiers, of the line lists or of [[band]] tables.
+    /// Band identifiers, of the line lists or of `[[band]]` tables.
     pub bands: Vec<String>,
     /// Ratios such as "CO2/H2O".
     #[serde(default)]
