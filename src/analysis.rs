@@ -4,6 +4,7 @@
 
 use crate::coma::{ApertureKm, Lengths, ResidenceGrid, molecules_per_flux};
 use crate::fit::{BandFit, BandModel, FitSettings, SpectrumFit, fit_spectrum};
+use crate::frame::orbit::Sky;
 use crate::frame::{Aperture, Frame, Geometry, to_rest};
 use crate::ground::{Caveat, Error, Measured, Result, Species};
 use crate::ratio::{
@@ -21,6 +22,8 @@ pub struct Settings {
     pub date: Option<String>,
     /// Distances and velocities.
     pub geometry: Geometry,
+    /// The view from the observer, when the geometry came from an orbit.
+    pub sky: Option<Sky>,
     /// Extraction aperture.
     pub aperture: Aperture,
     /// One per spectrum, in the order of the spectra.

@@ -6,7 +6,7 @@ use crate::figures::Width;
 use crate::ground::{Error, Result};
 use crate::plan::{Plan, PlanFile, check, read_plan, to_toml};
 use crate::report::{self, Input};
-use crate::spectrum::{Spectrum, TextLayout, read_text};
+use crate::spectrum::{Layout, Spectrum, Understood, read_spectrum};
 use crate::tables::Tables;
 use clap::Args;
 use sha2::{Digest, Sha256};
@@ -72,8 +72,9 @@ impl Measure {
         let mut file = read_plan(&self.plan)?;
         self.override_plan(&mut file.plan);
         let tables = load_tables(&file)?;
-        let checked = check(&file, &tables)?;
-        let spectra = read_spectra(&checked.files)?;
+        let mut checked = check(&file, &tables)?;
+        let (spectra, understood) = read_spectra(&checked.files)?;
+        checked.settle_frames(&file, &understood)?;
         if self.check {
             let bands = checked.settings.bands.len();
             output::complain(&format!(
@@ -140,11 +141,12 @@ fn load_tables(file: &PlanFile) -> Result<Tables> {
     Tables::load(lists.as_deref(), comparison.as_deref())
 }
 
-fn read_spectra(files: &[(PathBuf, TextLayout)]) -> Result<Vec<Spectrum>> {
-    files
+fn read_spectra(files: &[(PathBuf, Layout)]) -> Result<(Vec<Spectrum>, Vec<Option<Understood>>)> {
+    let read = files
         .iter()
-        .map(|(path, layout)| read_text(path, layout).map_err(|e| e.in_file(path)))
-        .collect()
+        .map(|(path, layout)| read_spectrum(path, layout))
+        .collect::<Result<Vec<_>>>()?;
+    Ok(read.into_iter().unzip())
 }
 
 /// The default folder: `night1.toml` gives `night1-results`.

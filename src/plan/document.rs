@@ -169,9 +169,11 @@ fn explain(message: &str) -> (String, Option<String>) {
         && let Some(name) = quoted.first()
     {
         let remedy = match *name {
-            "spectrum" => "add a [[spectrum]] table with file, wavelength_unit and flux_unit",
+            "spectrum" => {
+                "add a [[spectrum]] table with file and, for text, wavelength_unit, medium and flux_unit"
+            }
             "comet" => {
-                "add a [comet] table with label, heliocentric_au, heliocentric_km_s, observer_au and observer_km_s"
+                "add a [comet] table with label and the geometry: heliocentric_au, heliocentric_km_s, observer_au and observer_km_s, or a date with [comet.orbit]"
             }
             "aperture" => {
                 "add an [aperture] table with radius_arcsec, or width_arcsec and length_arcsec"
@@ -204,6 +206,10 @@ fn plain_types(message: &str) -> String {
         (
             "data did not match any variant of untagged enum ColumnPlan",
             "a column is given by its number or its name",
+        ),
+        (
+            "data did not match any variant of untagged enum DatePlan",
+            "a date is text such as \"2031-04-17T05:12\" or a Julian date",
         ),
         ("floating point", "number"),
     ]

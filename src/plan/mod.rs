@@ -8,10 +8,11 @@ mod document;
 mod resolve;
 mod schema;
 
-pub use check::{check, default_bands_in};
+pub use check::{Checked, check, default_bands_in, instant, orbit, site};
 pub use document::{PlanFile, read_plan};
 pub use resolve::to_toml;
 pub use schema::{
-    AperturePlan, BandPlan, ColumnPlan, ColumnsPlan, ComaPlan, CometPlan, ContinuumPlan, DrawsPlan,
-    LifetimePlan, MeasurePlan, Plan, SpectrumPlan, TablesPlan,
+    AperturePlan, BandPlan, ColumnPlan, ColumnsPlan, ComaPlan, CometPlan, ContinuumPlan, DatePlan,
+    DrawsPlan, LifetimePlan, MeasurePlan, OrbitPlan, Plan, SitePlan, SpectrumPlan, StatePlan,
+    TablesPlan,
 };

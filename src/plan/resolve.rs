@@ -21,7 +21,6 @@ pub(super) fn defaults(plan: &Plan, folder: &Path) -> Plan {
     };
     for s in &mut out.spectrum {
         s.file = absolute(&s.file);
-        s.frame.get_or_insert_with(|| "observer".to_owned());
         s.sampling.get_or_insert_with(|| "centre".to_owned());
     }
     out.measure

@@ -36,23 +36,100 @@ pub struct Plan {
     pub tables: TablesPlan,
 }
 
-/// The comet and the geometry of the observation.
-#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+/// The comet and the geometry of the observation: the four numbers, or an orbit, a state vector or
+/// an ephemeris with a date.
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize, JsonSchema)]
 #[serde(deny_unknown_fields)]
 pub struct CometPlan {
     /// Name for tables and figures.
     pub label: String,
-    /// Date of the observation (UTC), free text for the report.
+    /// Middle of the observation, UTC unless it says TT or TDB: "2031-04-17", "2031-04-17T05:12:30"
+    /// or a Julian date. Needed with an orbit, a state or an ephemeris.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub date: Option<String>,
+    pub date: Option<DatePlan>,
     /// Heliocentric distance, au.
-    pub heliocentric_au: f64,
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub heliocentric_au: Option<f64>,
     /// Heliocentric velocity, km/s, positive when receding.
-    pub heliocentric_km_s: f64,
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub heliocentric_km_s: Option<f64>,
     /// Distance to the observer, au.
-    pub observer_au: f64,
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub observer_au: Option<f64>,
     /// Velocity to the observer, km/s, positive when receding.
-    pub observer_km_s: f64,
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub observer_km_s: Option<f64>,
+    /// CSV file, relative to the plan, with columns time, heliocentric_au, observer_au and, where
+    /// known, heliocentric_km_s and observer_km_s; interpolated to the date.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub ephemeris: Option<String>,
+    /// Orbital elements, ecliptic J2000.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub orbit: Option<OrbitPlan>,
+    /// Heliocentric position and velocity instead of elements.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub state: Option<StatePlan>,
+    /// The observatory; without it the Earth's centre.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub site: Option<SitePlan>,
+}
+
+/// A date as text or a Julian date.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(untagged)]
+pub enum DatePlan {
+    /// Julian date.
+    Julian(f64),
+    /// Calendar date, with or without a time.
+    Text(String),
+}
+
+/// Orbital elements, ecliptic and equinox J2000; any eccentricity.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct OrbitPlan {
+    /// Perihelion distance q, au.
+    pub perihelion_au: f64,
+    /// Eccentricity e.
+    pub eccentricity: f64,
+    /// Inclination i, degrees.
+    pub inclination_deg: f64,
+    /// Longitude of the ascending node Ω, degrees.
+    pub node_deg: f64,
+    /// Argument of perihelion ω, degrees.
+    pub argument_deg: f64,
+    /// Time of perihelion T (TDB).
+    pub perihelion_time: DatePlan,
+    /// Epoch of the elements (TDB).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub epoch: Option<DatePlan>,
+}
+
+/// A heliocentric state vector.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct StatePlan {
+    /// Position, au.
+    pub position_au: [f64; 3],
+    /// Velocity, au per day.
+    pub velocity_au_d: [f64; 3],
+    /// "ecliptic" (J2000) or "equatorial" (ICRS).
+    pub axes: String,
+    /// Epoch (TDB).
+    pub epoch: DatePlan,
+}
+
+/// An observatory on the Earth.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct SitePlan {
+    /// Longitude, degrees, positive to the east.
+    pub longitude_deg: f64,
+    /// Geodetic latitude, degrees.
+    pub latitude_deg: f64,
+    /// Height, m (default 0).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub height_m: Option<f64>,
 }
 
 /// A circle (radius or diameter) or a slit (width and length), arcsec.
@@ -82,13 +159,26 @@ pub struct AperturePlan {
 pub struct SpectrumPlan {
     /// The file, relative to the plan.
     pub file: String,
-    /// Unit of the spectral axis: Angstrom, nm, um, cm-1, Hz …
-    pub wavelength_unit: String,
+    /// Part of a FITS file, by extension name or number (0 is the primary part).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub part: Option<ColumnPlan>,
+    /// Row of a FITS table with one spectrum per row, or of a two-dimensional image, from 1.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub row: Option<usize>,
+    /// Unit of the spectral axis: Angstrom, nm, um, cm-1, Hz … Needed for text files; FITS files
+    /// usually say it themselves.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub wavelength_unit: Option<String>,
     /// Medium of the wavelengths: vacuum or air.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub medium: Option<String>,
     /// Unit of the flux density, for example "erg/s/cm2/Angstrom", "W/m2/um", "Jy", "mJy/arcsec2".
-    pub flux_unit: String,
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub flux_unit: Option<String>,
+    /// What the errors of a FITS file are: "sigma", "variance" or "inverse variance" (default: what
+    /// the file says).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub error_is: Option<String>,
     /// Columns by name or one-based number.
     #[serde(default, skip_serializing_if = "ColumnsPlan::is_default")]
     pub columns: ColumnsPlan,
@@ -98,9 +188,14 @@ pub struct SpectrumPlan {
     /// Or its full width at half maximum in the wavelength unit.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub instrument_fwhm: Option<f64>,
-    /// Frame of the wavelengths: "observer" (default) or "comet".
+    /// Frame of the wavelengths: "observer", "comet", "geocentric", "heliocentric" or "barycentric"
+    /// (default: what a FITS file says, else "observer").
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub frame: Option<String>,
+    /// Velocity of the comet in that frame along the line of sight, km/s, positive when receding;
+    /// needed for the last three frames when there is no orbit to compute it from.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub frame_velocity_km_s: Option<f64>,
     /// Relative error of the flux calibration, common to the whole spectrum.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub calibration_sigma: Option<f64>,

@@ -46,6 +46,12 @@ pub struct Sky {
     pub motion_arcsec_per_h: f64,
     /// Position angle of the apparent motion, degrees.
     pub motion_position_angle_deg: f64,
+    /// Component of the comet's velocity along the line of sight relative to the Earth's centre, km s⁻¹.
+    pub sight_geocentric_km_s: f64,
+    /// The same relative to the Sun, km s⁻¹.
+    pub sight_heliocentric_km_s: f64,
+    /// The same relative to the barycentre of the solar system, km s⁻¹.
+    pub sight_barycentric_km_s: f64,
     /// Days from the epoch of the elements to the observation, if they have an epoch.
     pub days_from_epoch: Option<f64>,
 }
@@ -70,18 +76,24 @@ impl Sky {
 /// # Errors
 /// Dates outside 1900–2100, where the series does not hold, are refused.
 pub fn earth_heliocentric(when: &Instant) -> Result<State> {
+    Ok(earth_and_sun(when)?.0)
+}
+
+/// The Earth from the Sun, and the Sun's velocity from the barycentre, au d⁻¹.
+fn earth_and_sun(when: &Instant) -> Result<(State, Vector3<f64>)> {
     let (day, part) = when.two_part(Scale::Tdb);
-    let Some((helio, _)) = sofars::eph::epv00(day, part) else {
+    let Some((helio, bary)) = sofars::eph::epv00(day, part) else {
         return Err(Error::plan(format!(
             "JD {} is outside 1900 to 2100, where the Earth's position is known",
             day + part
         ))
         .remedy("give the distances and rates themselves instead of an orbit"));
     };
-    Ok(State {
+    let earth = State {
         position_au: helio[0],
         velocity_au_d: helio[1],
-    })
+    };
+    Ok((earth, Vector3::from(bary[1]) - Vector3::from(helio[1])))
 }
 
 /// The comet seen at `when` from the Earth's centre or from a site.
@@ -114,10 +126,13 @@ struct Scene {
     comet_motion: Vector3<f64>,
     observer: Vector3<f64>,
     observer_motion: Vector3<f64>,
+    earth_motion: Vector3<f64>,
+    /// Of the Sun from the barycentre.
+    sun_motion: Vector3<f64>,
 }
 
 fn look(orbit: &Orbit, when: &Instant, site: Option<&Site>, light_time: bool) -> Result<Sky> {
-    let earth = earth_heliocentric(when)?;
+    let (earth, sun_motion) = earth_and_sun(when)?;
     let mut observer = Vector3::from(earth.position_au);
     let mut observer_motion = Vector3::from(earth.velocity_au_d);
     if let Some(site) = site {
@@ -144,6 +159,8 @@ fn look(orbit: &Orbit, when: &Instant, site: Option<&Site>, light_time: bool) ->
         comet_motion: comet.velocity_au_d.into(),
         observer,
         observer_motion,
+        earth_motion: earth.velocity_au_d.into(),
+        sun_motion,
     };
     scene.sky(light_time, orbit.days_from_epoch(when))
 }
@@ -162,7 +179,11 @@ impl Scene {
         let plane = SkyPlane::at(&sight);
         let (motion_arcsec_per_h, motion_position_angle_deg) =
             self.apparent_motion(&plane, light_time);
+        let along = |motion: Vector3<f64>| sight.dot(&motion) / observer_au * KM_S_PER_AU_D;
         Ok(Sky {
+            sight_geocentric_km_s: along(self.comet_motion - self.earth_motion),
+            sight_heliocentric_km_s: along(self.comet_motion),
+            sight_barycentric_km_s: along(self.comet_motion + self.sun_motion),
             heliocentric_au: geometry.heliocentric_au,
             heliocentric_km_s: geometry.heliocentric_km_s,
             observer_au: geometry.observer_au,

@@ -147,7 +147,8 @@ impl Checker<'_> {
         listed: Option<&Band>,
         keys: &[&str],
     ) -> Result<BandModel> {
-        let (unit, medium) = self.axis_or(own.unit.as_ref(), own.medium.as_ref(), keys)?;
+        // Asked only where a length is given: the unit may be known to the file alone.
+        let axis = || self.axis_or(own.unit.as_ref(), own.medium.as_ref(), keys);
         let needed = |name: &str| {
             self.file.point(
                 Error::plan(format!(
@@ -158,18 +159,24 @@ impl Checker<'_> {
             )
         };
         let centre_aa = match (own.centre, listed) {
-            (Some(c), _) => unit.vacuum_aa(c, medium),
+            (Some(c), _) => {
+                let (unit, medium) = axis()?;
+                unit.vacuum_aa(c, medium)
+            }
             (None, Some(b)) => b.centre_aa,
             (None, None) => return Err(needed("centre")),
         };
         let fwhm_aa = match (own.fwhm, listed) {
-            (Some(w), _) => Some(width_aa(w, own.centre, centre_aa, unit)),
+            (Some(w), _) => Some(width_aa(w, own.centre, centre_aa, axis()?.0)),
             (None, Some(b)) => Some(b.fwhm_aa),
             (None, None) => None,
         };
         let window_aa = match (own.window, listed) {
-            (Some(w), _) => range_aa(w, unit, medium)
-                .map_err(|e| self.file.point(e, &[keys[0], keys[1], "window"]))?,
+            (Some(w), _) => {
+                let (unit, medium) = axis()?;
+                range_aa(w, unit, medium)
+                    .map_err(|e| self.file.point(e, &[keys[0], keys[1], "window"]))?
+            }
             (None, Some(b)) => b.window_aa,
             (None, None) => return Err(needed("window")),
         };

@@ -4,7 +4,7 @@ use crate::fit::Resolution;
 use crate::frame::Aperture;
 use crate::ground::{Error, Medium, Result, WavelengthUnit, constants};
 use crate::plan::schema::{AperturePlan, ColumnPlan, ColumnsPlan, SpectrumPlan};
-use crate::spectrum::{Column, TextLayout};
+use crate::spectrum::{Column, FitsLayout, TextLayout};
 
 pub(super) fn number_in(name: &str, value: f64, low: f64, high: f64, remedy: &str) -> Result<f64> {
     if (low..=high).contains(&value) {
@@ -52,7 +52,10 @@ pub(super) fn aperture(plan: &AperturePlan) -> Result<Aperture> {
     found.checked()
 }
 
-pub(super) fn resolution(s: &SpectrumPlan, unit: WavelengthUnit) -> Result<Option<Resolution>> {
+pub(super) fn resolution(
+    s: &SpectrumPlan,
+    unit: Option<WavelengthUnit>,
+) -> Result<Option<Resolution>> {
     match (s.resolving_power, s.instrument_fwhm) {
         (Some(_), Some(_)) => Err(Error::plan(
             "resolving_power and instrument_fwhm are both given",
@@ -69,11 +72,11 @@ pub(super) fn resolution(s: &SpectrumPlan, unit: WavelengthUnit) -> Result<Optio
             Ok(Some(Resolution::ResolvingPower(r)))
         }
         (None, Some(w)) => {
-            let WavelengthUnit::Length { aa } = unit else {
-                return Err(
-                    Error::plan("instrument_fwhm needs a spectral axis in wavelength")
-                        .remedy("give resolving_power instead"),
-                );
+            let Some(WavelengthUnit::Length { aa }) = unit else {
+                return Err(Error::plan(
+                    "instrument_fwhm needs a wavelength_unit that is a length",
+                )
+                .remedy("give resolving_power instead"));
             };
             number_in(
                 "instrument_fwhm",
@@ -125,22 +128,44 @@ pub(super) fn width_aa(
     }
 }
 
-pub(super) fn columns(plan: &ColumnsPlan, layout: &mut TextLayout) -> Result<()> {
-    let convert = |c: &ColumnPlan| match c {
+fn column(plan: &ColumnPlan) -> Result<Column> {
+    match plan {
         ColumnPlan::Number(0) => Err(Error::plan("column number 0: columns are counted from 1")),
         ColumnPlan::Number(n) => Ok(Column::Number(*n)),
         ColumnPlan::Name(name) => Ok(Column::Name(name.clone())),
+    }
+}
+
+fn set(target: &mut Option<Column>, plan: Option<&ColumnPlan>) -> Result<()> {
+    if let Some(plan) = plan {
+        *target = Some(column(plan)?);
+    }
+    Ok(())
+}
+
+/// Columns of a text table.
+pub(super) fn columns(plan: &ColumnsPlan, layout: &mut TextLayout) -> Result<()> {
+    set(&mut layout.wavelength, plan.wavelength.as_ref())?;
+    set(&mut layout.flux, plan.flux.as_ref())?;
+    set(&mut layout.error, plan.error.as_ref())?;
+    set(&mut layout.mask, plan.mask.as_ref())?;
+    if let Some(good) = &plan.mask_good {
+        layout.mask_good.clone_from(good);
+    }
+    Ok(())
+}
+
+/// Columns of a FITS table, or the parts that go with an image.
+pub(super) fn fits_columns(plan: &ColumnsPlan, layout: &mut FitsLayout) -> Result<()> {
+    set(&mut layout.wavelength, plan.wavelength.as_ref())?;
+    set(&mut layout.flux, plan.flux.as_ref())?;
+    // For images these are parts, counted from 0.
+    let part = |c: &ColumnPlan| match c {
+        ColumnPlan::Number(n) => Column::Number(*n),
+        ColumnPlan::Name(name) => Column::Name(name.clone()),
     };
-    let set = |target: &mut Option<Column>, c: &Option<ColumnPlan>| {
-        if let Some(c) = c {
-            *target = Some(convert(c)?);
-        }
-        Ok::<(), Error>(())
-    };
-    set(&mut layout.wavelength, &plan.wavelength)?;
-    set(&mut layout.flux, &plan.flux)?;
-    set(&mut layout.error, &plan.error)?;
-    set(&mut layout.mask, &plan.mask)?;
+    layout.error = plan.error.as_ref().map(part);
+    layout.mask = plan.mask.as_ref().map(part);
     if let Some(good) = &plan.mask_good {
         layout.mask_good.clone_from(good);
     }

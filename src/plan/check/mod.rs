@@ -3,21 +3,25 @@
 
 mod bands;
 mod coma;
+mod continuum;
 mod convert;
 mod efficiency;
+mod geometry;
 mod ratios;
+mod spectra;
 
-use crate::analysis::{Settings, SpectrumSettings};
-use crate::fit::{FitSettings, Sampling};
-use crate::frame::{Frame, Geometry};
-use crate::ground::{Caveat, Error, FluxUnit, Medium, Result, WavelengthUnit};
+pub use geometry::{instant, orbit, site};
+
+use crate::analysis::Settings;
+use crate::ground::{Caveat, Error, Result};
 use crate::plan::document::PlanFile;
 use crate::plan::resolve::defaults;
 use crate::plan::schema::Plan;
 use crate::ratio::DrawSettings;
-use crate::spectrum::TextLayout;
+use crate::spectrum::{Layout, Understood};
 use crate::tables::{Band, Tables};
-use convert::{aperture, columns, file_name, number_in, range_aa, resolution};
+use convert::{aperture, number_in};
+use geometry::date_text;
 use std::collections::BTreeMap;
 use std::path::PathBuf;
 
@@ -26,7 +30,7 @@ pub struct Checked {
     /// For the analysis.
     pub settings: Settings,
     /// Paths of the spectra and their layouts.
-    pub files: Vec<(PathBuf, TextLayout)>,
+    pub files: Vec<(PathBuf, Layout)>,
     /// The plan with all defaults filled in and paths made absolute.
     pub resolved: Plan,
 }
@@ -53,6 +57,28 @@ pub fn check(file: &PlanFile, tables: &Tables) -> Result<Checked> {
     })
 }
 
+impl Checked {
+    /// Sets the frames that the files themselves name (SPECSYS) where the plan is silent.
+    ///
+    /// # Errors
+    /// A frame in which the comet's velocity is not known.
+    pub fn settle_frames(&mut self, file: &PlanFile, read: &[Option<Understood>]) -> Result<()> {
+        for (i, understood) in read.iter().enumerate() {
+            let plan = &self.resolved.spectrum[i];
+            let said = understood.as_ref().and_then(|u| {
+                let word = u.frame.iter().find(|(key, _)| key == "SPECSYS");
+                word.map(|(_, value)| value.clone())
+            });
+            if let (None, Some(word)) = (&plan.frame, said) {
+                let frame = spectra::frame(&word, plan, self.settings.sky.as_ref())
+                    .map_err(|e| file.point(e, &["spectrum", &i.to_string(), "file"]))?;
+                self.settings.spectra[i].frame = frame;
+            }
+        }
+        Ok(())
+    }
+}
+
 /// Identifiers of the line lists' bands whose centre lies between two vacuum wavelengths, Å.
 pub fn default_bands_in(tables: &Tables, low_aa: f64, high_aa: f64) -> Vec<&Band> {
     tables
@@ -73,13 +99,7 @@ struct Checker<'a> {
 impl Checker<'_> {
     fn settings(&mut self) -> Result<Settings> {
         let c = &self.plan.comet;
-        let geometry = Geometry::new(
-            c.heliocentric_au,
-            c.heliocentric_km_s,
-            c.observer_au,
-            c.observer_km_s,
-        )
-        .map_err(|e| self.point_at_value(e, &["comet"]))?;
+        let (geometry, sky) = self.geometry()?;
         if c.label.trim().is_empty() {
             return Err(self.file.point(
                 Error::plan("the comet's label is empty"),
@@ -88,7 +108,7 @@ impl Checker<'_> {
         }
         let aperture =
             aperture(&self.plan.aperture).map_err(|e| self.file.point(e, &["aperture"]))?;
-        let spectra = self.spectra()?;
+        let spectra = self.spectra(sky.as_ref())?;
         let bands = self.bands(&geometry)?;
         let ratios = self.ratios(&bands)?;
         let species = self.species(&bands, &ratios, &geometry)?;
@@ -117,7 +137,8 @@ impl Checker<'_> {
         });
         Ok(Settings {
             label: c.label.clone(),
-            date: c.date.clone(),
+            date: c.date.as_ref().map(date_text),
+            sky,
             geometry,
             aperture,
             spectra,
@@ -157,176 +178,5 @@ impl Checker<'_> {
             "3 is common practice",
         )
         .map_err(|e| self.file.point(e, &["measure", "detection_sigma"]))
-    }
-
-    fn axis(&self, i: usize) -> Result<(WavelengthUnit, Medium)> {
-        let s = &self.plan.spectrum[i];
-        let at = i.to_string();
-        let unit = WavelengthUnit::parse(&s.wavelength_unit)
-            .map_err(|e| self.file.point(e, &["spectrum", &at, "wavelength_unit"]))?;
-        let medium = match (&s.medium, &unit) {
-            (Some(text), _) => {
-                Medium::parse(text).map_err(|e| self.file.point(e, &["spectrum", &at, "medium"]))?
-            }
-            (None, WavelengthUnit::Length { .. }) => {
-                return Err(self.file.point(
-                    Error::plan("the key medium is missing: wavelengths can be in vacuum or air")
-                        .remedy("add medium = \"vacuum\" or medium = \"air\""),
-                    &["spectrum", &at, "wavelength_unit"],
-                ));
-            }
-            (None, _) => Medium::Vacuum,
-        };
-        Ok((unit, medium))
-    }
-
-    /// Unit and medium of lengths elsewhere in the plan: their own, or the first spectrum's.
-    fn axis_or(
-        &self,
-        unit: Option<&String>,
-        medium: Option<&String>,
-        keys: &[&str],
-    ) -> Result<(WavelengthUnit, Medium)> {
-        let point = |e: Error, key: &str| {
-            let mut keys = keys.to_vec();
-            keys.push(key);
-            self.file.point(e, &keys)
-        };
-        let first = self.axis(0)?;
-        let unit = match unit {
-            Some(text) => WavelengthUnit::parse(text).map_err(|e| point(e, "unit"))?,
-            None => first.0,
-        };
-        let medium = match medium {
-            Some(text) => Medium::parse(text).map_err(|e| point(e, "medium"))?,
-            None => first.1,
-        };
-        Ok((unit, medium))
-    }
-
-    fn spectra(&mut self) -> Result<Vec<SpectrumSettings>> {
-        if self.plan.spectrum.is_empty() {
-            return Err(self.file.point(
-                Error::plan("the plan names no spectrum").remedy("add a [[spectrum]] table"),
-                &["spectrum"],
-            ));
-        }
-        let continuum = self.continuum()?;
-        (0..self.plan.spectrum.len())
-            .map(|i| self.spectrum(i, &continuum))
-            .collect()
-    }
-
-    fn spectrum(&mut self, i: usize, continuum: &FitSettings) -> Result<SpectrumSettings> {
-        let s = &self.plan.spectrum[i];
-        let at = i.to_string();
-        let point = |e: Error, key: &str| self.file.point(e, &["spectrum", &at, key]);
-        let (unit, _) = self.axis(i)?;
-        let mut fit = continuum.clone();
-        fit.resolution =
-            resolution(s, unit).map_err(|e| self.point_at_value(e, &["spectrum", &at]))?;
-        fit.sampling = match s.sampling.as_deref() {
-            None | Some("centre") => Sampling::Centre,
-            Some("pixel") => Sampling::Pixel,
-            Some(other) => {
-                return Err(point(
-                    Error::plan(format!(
-                        "sampling {other:?} is neither \"centre\" nor \"pixel\""
-                    )),
-                    "sampling",
-                ));
-            }
-        };
-        let frame = match s.frame.as_deref() {
-            None | Some("observer") => Frame::Observer,
-            Some("comet") => Frame::Comet,
-            Some(other) => {
-                return Err(point(
-                    Error::plan(format!(
-                        "frame {other:?} is neither \"observer\" nor \"comet\""
-                    )),
-                    "frame",
-                ));
-            }
-        };
-        let calibration_sigma = s.calibration_sigma.unwrap_or(0.0);
-        number_in(
-            "calibration_sigma",
-            calibration_sigma,
-            0.0,
-            1.0,
-            "give a relative error such as 0.05",
-        )
-        .map_err(|e| point(e, "calibration_sigma"))?;
-        if s.calibration_sigma.is_none() {
-            self.caveats.push(Caveat::Other {
-                code: "no-calibration-error",
-                text: format!(
-                    "{}: no calibration_sigma given; fluxes and production rates carry no calibration error",
-                    file_name(&s.file)
-                ),
-            });
-        }
-        Ok(SpectrumSettings {
-            frame,
-            fit,
-            calibration_sigma,
-        })
-    }
-
-    fn continuum(&self) -> Result<FitSettings> {
-        let c = &self.plan.continuum;
-        let (unit, medium) = self.axis_or(c.unit.as_ref(), c.medium.as_ref(), &["continuum"])?;
-        let mut fit = FitSettings::new(Vec::new());
-        fit.continuum_order = c.order;
-        if c.order.is_some_and(|o| o > 12) {
-            return Err(self.file.point(
-                Error::plan(format!(
-                    "order = {} is outside 0 to 12",
-                    c.order.unwrap_or_default()
-                )),
-                &["continuum", "order"],
-            ));
-        }
-        let ranges = |list: &[[f64; 2]], key: &str| {
-            list.iter()
-                .map(|r| {
-                    range_aa(*r, unit, medium).map_err(|e| self.file.point(e, &["continuum", key]))
-                })
-                .collect::<Result<Vec<_>>>()
-        };
-        fit.continuum_ranges_aa = ranges(&c.ranges, "ranges")?;
-        fit.excluded_aa = ranges(&c.exclude, "exclude")?;
-        fit.detection_sigma = self.detection_sigma()?;
-        fit.free_shape_sigma = number_in(
-            "free_shape_sigma",
-            self.plan
-                .measure
-                .free_shape_sigma
-                .expect("invariant: default filled in"),
-            3.0,
-            1e6,
-            "10 keeps weak bands unbiased",
-        )
-        .map_err(|e| self.file.point(e, &["measure", "free_shape_sigma"]))?;
-        Ok(fit)
-    }
-
-    fn files(&self) -> Result<Vec<(PathBuf, TextLayout)>> {
-        self.plan
-            .spectrum
-            .iter()
-            .enumerate()
-            .map(|(i, s)| {
-                let at = i.to_string();
-                let (unit, medium) = self.axis(i)?;
-                let flux = FluxUnit::parse(&s.flux_unit)
-                    .map_err(|e| self.file.point(e, &["spectrum", &at, "flux_unit"]))?;
-                let mut layout = TextLayout::new(unit, medium, flux);
-                columns(&s.columns, &mut layout)
-                    .map_err(|e| self.file.point(e, &["spectrum", &at, "columns"]))?;
-                Ok((PathBuf::from(&s.file), layout))
-            })
-            .collect()
     }
 }
