@@ -4,8 +4,13 @@
 //! end.
 
 mod bands;
+mod describe;
+mod geometry;
 mod measure;
 mod output;
+mod prepare;
+mod reading;
+mod show;
 
 use clap::{Parser, Subcommand};
 use std::process::ExitCode;
@@ -20,10 +25,22 @@ struct Cli {
 
 #[derive(Subcommand)]
 enum Command {
+    /// Look at a spectrum, list the bands in its range and write a starter plan.
+    Prepare(prepare::Prepare),
+    /// Show what a file holds and how it is understood.
+    Show(show::Show),
+    /// Distances, rates and angles of a comet over dates, from its orbit.
+    Geometry(geometry::Geometry),
     /// Fit the bands of a plan and turn them into production rates and ratios.
     Measure(measure::Measure),
     /// List the bands of the line lists, with their g-factors and sources.
     Bands(bands::Bands),
+    /// Print the JSON Schema of the plan, for editors.
+    Schema,
+    /// Print a completion script for a shell.
+    Completions(describe::Completions),
+    /// Print the manual page.
+    Man,
 }
 
 /// Runs the program on the process's arguments: exit code 0 done, 1 failed, 2 usage or plan.
@@ -32,6 +49,12 @@ pub fn run() -> ExitCode {
     let done = match cli.command {
         Command::Measure(m) => m.run(),
         Command::Bands(b) => b.run(),
+        Command::Prepare(p) => p.run(),
+        Command::Show(s) => s.run(),
+        Command::Geometry(g) => g.run(),
+        Command::Schema => describe::schema(),
+        Command::Completions(c) => c.run(),
+        Command::Man => describe::man(),
     };
     match done {
         Ok(()) => ExitCode::SUCCESS,

@@ -50,6 +50,9 @@ impl PlanFile {
         let text = text
             .strip_prefix('\u{feff}')
             .map_or(text.clone(), str::to_owned);
+        if let Some(error) = blanks(path, &text) {
+            return Err(error);
+        }
         match toml::from_str::<Plan>(&text) {
             Ok(plan) => Ok(Self {
                 plan,
@@ -113,6 +116,54 @@ impl PlanFile {
             }
         }
         found
+    }
+}
+
+/// The refusal of a plan with blanks, values `"?"`, all of them listed.
+fn blanks(path: &Path, text: &str) -> Option<Error> {
+    let root = toml::de::DeTable::parse(text).ok()?;
+    let mut found = Vec::new();
+    for (key, value) in root.get_ref() {
+        collect_blanks(key.get_ref().to_string(), value, &mut found);
+    }
+    let (_, first) = found.first()?;
+    let (line, excerpt) = underline(text, first.clone());
+    let list: Vec<String> = found
+        .iter()
+        .map(|(name, span)| format!("{name} (line {})", underline(text, span.clone()).0))
+        .collect();
+    let noun = if list.len() == 1 { "blank" } else { "blanks" };
+    Some(
+        Error::plan(format!(
+            "the plan has {} {noun} to fill in: {}",
+            list.len(),
+            list.join(", ")
+        ))
+        .in_file(path)
+        .at_line(line)
+        .showing(excerpt)
+        .remedy("replace each \"?\" by its value, or remove keys that another one replaces"),
+    )
+}
+
+fn collect_blanks(
+    name: String,
+    value: &toml::Spanned<toml::de::DeValue<'_>>,
+    found: &mut Vec<(String, Range<usize>)>,
+) {
+    match value.get_ref() {
+        toml::de::DeValue::String(text) if text.trim() == "?" => found.push((name, value.span())),
+        toml::de::DeValue::Array(items) => {
+            for (i, item) in items.iter().enumerate() {
+                collect_blanks(format!("{name}[{i}]"), item, found);
+            }
+        }
+        toml::de::DeValue::Table(inner) => {
+            for (key, value) in inner {
+                collect_blanks(format!("{name}.{}", key.get_ref()), value, found);
+            }
+        }
+        _ => {}
     }
 }
 

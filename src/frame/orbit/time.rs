@@ -145,6 +145,17 @@ impl Instant {
         }
     }
 
+    /// The date in UTC as `2031-04-17T05:12:30.123`, rounded to milliseconds.
+    pub fn utc_text(&self) -> String {
+        let (day, part) = self.two_part(Scale::Utc);
+        match ts::d2dtf("UTC", 3, day, part) {
+            Ok((year, month, day, [h, m, s, ms])) => {
+                format!("{year:04}-{month:02}-{day:02}T{h:02}:{m:02}:{s:02}.{ms:03}")
+            }
+            Err(_) => format!("JD {:.6}", day + part),
+        }
+    }
+
     /// TDB days since a Julian date in two parts.
     pub fn days_since_tdb(&self, day: f64, part: f64) -> f64 {
         (self.tdb.0 - day) + (self.tdb.1 - part)

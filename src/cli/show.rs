@@ -1,0 +1,192 @@
+//! `comagauge show`: what was read and how it was understood.
+
+use super::output;
+use super::reading::Reading;
+use crate::ground::Result;
+use crate::spectrum::{Spectrum, Understood};
+use clap::Args;
+use std::fmt::Write;
+use std::path::PathBuf;
+
+/// Arguments of `show`.
+#[derive(Args)]
+pub(super) struct Show {
+    /// The spectrum.
+    file: PathBuf,
+    #[command(flatten)]
+    reading: Reading,
+    /// Print the samples as read: vacuum wavelength, flux density, error, usable or not.
+    #[arg(long)]
+    csv: bool,
+}
+
+impl Show {
+    pub(super) fn run(self) -> Result<()> {
+        let (spectrum, understood) = self.reading.read(&self.file)?;
+        output::print(&if self.csv {
+            samples(&spectrum)
+        } else {
+            let mut out = format!("{}\n\n", self.file.display());
+            if let Some(u) = &understood {
+                out.push_str(&facts(u));
+            }
+            out.push_str(&content(&spectrum));
+            out
+        })
+    }
+}
+
+/// Samples as CSV; surface brightness has columns of its own.
+fn samples(spectrum: &Spectrum) -> String {
+    let mut out = String::from(if spectrum.per_arcsec2() {
+        "wavelength_vacuum_aa,brightness_erg_s_cm2_aa_arcsec2,brightness_sigma_erg_s_cm2_aa_arcsec2,good\n"
+    } else {
+        "wavelength_vacuum_aa,flux_erg_s_cm2_aa,sigma_erg_s_cm2_aa,good\n"
+    });
+    let number = |v: f64| {
+        if v.is_finite() {
+            format!("{v:e}")
+        } else {
+            String::new()
+        }
+    };
+    let sigma = spectrum.sigma_erg_s_cm2_aa();
+    for i in 0..spectrum.len() {
+        writeln!(
+            out,
+            "{},{},{},{}",
+            spectrum.wavelength_aa()[i],
+            number(spectrum.flux_erg_s_cm2_aa()[i]),
+            sigma.map_or_else(String::new, |s| number(s[i])),
+            spectrum.good()[i]
+        )
+        .expect("invariant: writing to memory");
+    }
+    out
+}
+
+fn line(out: &mut String, name: &str, value: &str) {
+    writeln!(out, "{name:14} {value}").expect("invariant: writing to memory");
+}
+
+fn facts(u: &Understood) -> String {
+    let mut out = String::new();
+    let words = |list: &[(String, String)]| {
+        let all: Vec<String> = list.iter().map(|(k, v)| format!("{k} = {v}")).collect();
+        if all.is_empty() {
+            "not said".to_owned()
+        } else {
+            all.join(", ")
+        }
+    };
+    for part in &u.parts {
+        let mark = if part.number == u.part {
+            "  ← read"
+        } else {
+            ""
+        };
+        line(
+            &mut out,
+            if part.number == 0 { "parts" } else { "" },
+            &format!(
+                "{} {} {}, {}{mark}",
+                part.number, part.name, part.kind, part.size
+            ),
+        );
+    }
+    line(
+        &mut out,
+        "object",
+        u.object.as_deref().unwrap_or("not said"),
+    );
+    line(&mut out, "date", &words(&u.date));
+    line(&mut out, "exposure", &words(&u.exposure));
+    line(&mut out, "position", &words(&u.position));
+    line(&mut out, "frame", &words(&u.frame));
+    line(
+        &mut out,
+        "axis",
+        &format!("{}, in {}", u.axis, u.wavelength_unit),
+    );
+    if let Some((medium, why)) = &u.medium {
+        line(&mut out, "medium", &format!("{medium} ({why})"));
+    }
+    line(&mut out, "flux", &u.flux_unit);
+    line(&mut out, "errors", u.errors.as_deref().unwrap_or("none"));
+    line(&mut out, "flags", u.flags.as_deref().unwrap_or("none"));
+    for (i, text) in u.assumed.iter().enumerate() {
+        line(&mut out, if i == 0 { "assumed" } else { "" }, text);
+    }
+    out.push('\n');
+    out
+}
+
+fn content(spectrum: &Spectrum) -> String {
+    let mut out = String::new();
+    let x = spectrum.wavelength_aa();
+    let (nan, flagged) = spectrum.left_out();
+    line(
+        &mut out,
+        "samples",
+        &format!(
+            "{} ({} usable, {nan} not a number, {flagged} flagged)",
+            x.len(),
+            x.len() - nan - flagged
+        ),
+    );
+    line(
+        &mut out,
+        "vacuum Å",
+        &format!("{:.3} to {:.3}", x[0], x[x.len() - 1]),
+    );
+    let mut steps: Vec<f64> = x.windows(2).map(|w| w[1] - w[0]).collect();
+    steps.sort_by(f64::total_cmp);
+    line(
+        &mut out,
+        "step Å",
+        &format!(
+            "{:.4} to {:.4}, median {:.4}",
+            steps[0],
+            steps[steps.len() - 1],
+            steps[steps.len() / 2]
+        ),
+    );
+    let unit = if spectrum.per_arcsec2() {
+        "erg/s/cm2/Å/arcsec2"
+    } else {
+        "erg/s/cm2/Å"
+    };
+    let good = |values: &[f64]| -> Vec<f64> {
+        let mut kept: Vec<f64> = values
+            .iter()
+            .zip(spectrum.good())
+            .filter(|(_, g)| **g)
+            .map(|(v, _)| *v)
+            .collect();
+        kept.sort_by(f64::total_cmp);
+        kept
+    };
+    let flux = good(spectrum.flux_erg_s_cm2_aa());
+    if let (Some(low), Some(high)) = (flux.first(), flux.last()) {
+        let median = flux[flux.len() / 2];
+        line(
+            &mut out,
+            "flux density",
+            &format!("{low:.3e} to {high:.3e}, median {median:.3e} {unit}"),
+        );
+    }
+    match spectrum.sigma_erg_s_cm2_aa() {
+        Some(sigma) => {
+            let sigma = good(sigma);
+            if let Some(median) = sigma.get(sigma.len() / 2) {
+                line(&mut out, "error", &format!("median {median:.3e} {unit}"));
+            }
+        }
+        None => line(
+            &mut out,
+            "error",
+            "none; estimated from the scatter when fitted",
+        ),
+    }
+    out
+}
