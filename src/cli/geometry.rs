@@ -116,7 +116,7 @@ impl Geometry {
             ));
         }
         if let Some(path) = &self.figure {
-            let svg = figure(&rows)?;
+            let svg = figure(&orbit, &rows)?;
             let folder = path.parent().unwrap_or(std::path::Path::new("."));
             let name = path
                 .file_name()
@@ -308,8 +308,8 @@ fn table(rows: &[(Instant, Sky)]) -> String {
     out
 }
 
-/// Distances in au and, scaled to share the axis, nothing else: rates go to a second curve set.
-fn figure(rows: &[(Instant, Sky)]) -> Result<String> {
+/// r_h and Δ in au with ṙ_h in 10 km/s, which share one axis.
+fn figure(orbit: &Orbit, rows: &[(Instant, Sky)]) -> Result<String> {
     if rows.len() < 2 {
         return Err(Error::plan("a figure needs at least two dates").remedy("give --from and --to"));
     }
@@ -320,14 +320,11 @@ fn figure(rows: &[(Instant, Sky)]) -> Result<String> {
         x: x.clone(),
         y: rows.iter().map(|(_, s)| value(s)).collect(),
     };
-    let nearest = rows
-        .iter()
-        .zip(&x)
-        .min_by(|a, b| a.0.1.heliocentric_au.total_cmp(&b.0.1.heliocentric_au));
-    let marks = nearest
-        .filter(|(_, at)| **at > x[0] && **at < x[x.len() - 1])
-        .map(|(_, at)| VerticalMark {
-            x: *at,
+    let perihelion = rows[0].0.jd(Scale::Tdb) - orbit.days_from_perihelion(&rows[0].0) - first;
+    let marks = Some(perihelion)
+        .filter(|at| *at > x[0] && *at < x[x.len() - 1])
+        .map(|at| VerticalMark {
+            x: at,
             label: "perihelion".to_owned(),
         })
         .into_iter()

@@ -205,6 +205,10 @@ impl Prepare {
             .iter()
             .filter(|f| f.has_g && f.hidden_by.is_none())
             .collect();
+        if chosen.is_empty() {
+            out.push_str(&own_band(&read[0].spectrum));
+            return out;
+        }
         out.push_str("\n[measure]\nbands = [\n");
         for f in found {
             let note = match (f.has_g, f.hidden_by) {
@@ -258,7 +262,15 @@ impl Prepare {
         let medium = said
             .and_then(|u| u.medium.as_ref())
             .map(|(m, why)| format!("{m}: {why}"));
-        keyed(out, "medium", flags.medium.as_deref(), medium);
+        if said.is_some_and(Understood::medium_is_open) && flags.medium.is_none() {
+            push(
+                out,
+                "medium = \"?\"",
+                "the file does not say: vacuum or air",
+            );
+        } else {
+            keyed(out, "medium", flags.medium.as_deref(), medium);
+        }
         let flux = said.map(|u| format!("the file says {}", u.flux_unit));
         keyed(out, "flux_unit", flags.flux_unit.as_deref(), flux);
         if let Some(kind) = flags.error_is {
@@ -322,6 +334,16 @@ observer_km_s = \"?\"      # its rate, km/s, positive when receding
 # perihelion_time = \"2031-07-02.4\"
 # epoch = \"2031-06-01\"
 ";
+
+/// A band of the user's own over the whole range, where the line lists have none to offer.
+fn own_band(spectrum: &Spectrum) -> String {
+    let x = spectrum.wavelength_aa();
+    let (low, high) = (x[0], x[x.len() - 1]);
+    format!(
+        "\n[measure]\nbands = [\"my-line\"]\nratios = []\n\n# No band of the line lists with a known g lies inside: a line of your own.\n[[band]]\nid = \"my-line\"\nunit = \"Angstrom\"\nmedium = \"vacuum\"\ncentre = {:.3}  # replace by the line's rest wavelength\nfwhm = 0.0\nwindow = [{low:.3}, {high:.3}]\n# species = \"…\", g_photons_s = … for molecules and ratios\n",
+        0.5 * (low + high)
+    )
+}
 
 fn push(out: &mut String, text: &str, comment: &str) {
     out.push_str(text);

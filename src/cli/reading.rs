@@ -1,5 +1,6 @@
 //! Flags that say how to read a spectrum, for commands that work without a plan.
 
+use super::output;
 use crate::ground::{Error, FluxUnit, Medium, Result, WavelengthUnit};
 use crate::spectrum::{
     Column, ErrorKind, FitsLayout, Layout, Part, Spectrum, TextLayout, Understood, looks_like_fits,
@@ -73,9 +74,17 @@ fn column(text: &Option<String>) -> Option<Column> {
 }
 
 impl Reading {
-    /// Reads a file as the flags say.
+    /// Reads a file as the flags say. A FITS file silent about the medium is taken as in vacuum,
+    /// with a word about it.
     pub(super) fn read(&self, path: &Path) -> Result<(Spectrum, Option<Understood>)> {
-        read_spectrum(path, &self.layout(path)?)
+        let read = read_spectrum(path, &self.layout(path)?)?;
+        if read.1.as_ref().is_some_and(Understood::medium_is_open) {
+            output::complain(&format!(
+                "caveat: {} does not say whether its wavelengths are in air or vacuum; shown as vacuum",
+                path.display()
+            ));
+        }
+        Ok(read)
     }
 
     fn layout(&self, path: &Path) -> Result<Layout> {
@@ -100,6 +109,7 @@ impl Reading {
                 mask_good: Vec::new(),
                 wavelength_unit,
                 medium,
+                medium_if_unsaid: Some(Medium::Vacuum),
                 flux_unit,
                 error_is: self.error_is.map(|e| match e {
                     ErrorWord::Sigma => ErrorKind::Sigma,

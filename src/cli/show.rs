@@ -85,13 +85,13 @@ fn facts(u: &Understood) -> String {
         } else {
             ""
         };
+        let words = [part.name.as_str(), part.kind.as_str(), part.size.as_str()];
+        let words: Vec<&str> = words.into_iter().filter(|w| !w.is_empty()).collect();
+        let name = if part.number == 0 { "parts" } else { "" };
         line(
             &mut out,
-            if part.number == 0 { "parts" } else { "" },
-            &format!(
-                "{} {} {}, {}{mark}",
-                part.number, part.name, part.kind, part.size
-            ),
+            name,
+            &format!("{} {}{mark}", part.number, words.join(", ")),
         );
     }
     line(

@@ -126,6 +126,7 @@ fn blanks(path: &Path, text: &str) -> Option<Error> {
     for (key, value) in root.get_ref() {
         collect_blanks(key.get_ref().to_string(), value, &mut found);
     }
+    found.sort_by_key(|(_, span): &(String, Range<usize>)| span.start);
     let (_, first) = found.first()?;
     let (line, excerpt) = underline(text, first.clone());
     let list: Vec<String> = found

@@ -69,6 +69,8 @@ pub struct FitsLayout {
     pub wavelength_unit: Option<WavelengthUnit>,
     /// Medium of the wavelengths.
     pub medium: Option<Medium>,
+    /// Medium to go on with when nothing says it, for a first look; `None` refuses.
+    pub medium_if_unsaid: Option<Medium>,
     /// Unit of the flux.
     pub flux_unit: Option<FluxUnit>,
     /// What the errors are.

@@ -51,6 +51,13 @@ pub struct Understood {
 }
 
 impl Understood {
+    /// True when the medium was neither given nor found, only gone on with.
+    pub fn medium_is_open(&self) -> bool {
+        self.medium
+            .as_ref()
+            .is_some_and(|(_, why)| why == super::units::MEDIUM_NOT_SAID)
+    }
+
     /// The facts that stand in the headers.
     pub(super) fn of(parts: &[PartInfo], chosen: usize) -> Self {
         let words = Words::of(parts, &parts[chosen]);

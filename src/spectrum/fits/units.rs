@@ -84,6 +84,9 @@ pub(super) fn flux(
     })
 }
 
+/// Reason given for a medium that neither plan nor file says.
+pub(super) const MEDIUM_NOT_SAID: &str = "not said in the file, taken as such for now";
+
 /// The medium of a length axis: of the plan, else of the file; other axes need none.
 pub(super) fn medium(
     layout: &FitsLayout,
@@ -105,6 +108,9 @@ pub(super) fn medium(
     }
     match said.first() {
         Some(found) => Ok(Some(found.clone())),
+        None if layout.medium_if_unsaid.is_some() => Ok(layout
+            .medium_if_unsaid
+            .map(|medium| (medium, MEDIUM_NOT_SAID.to_owned()))),
         None => Err(Error::input(
             "the file does not say whether its wavelengths are in air or in vacuum",
         )

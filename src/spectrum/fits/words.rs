@@ -75,12 +75,26 @@ impl<'a> Words<'a> {
                 _ => None,
             },
         });
+        if vacuum.is_none()
+            && let Some(name) = self.text_inherited("TELESCOP")
+            && IN_SPACE.contains(&name.to_ascii_uppercase().as_str())
+        {
+            return Ok(Some((
+                Medium::Vacuum,
+                format!("TELESCOP = {name}, in space"),
+            )));
+        }
         Ok(vacuum.map(|yes| {
             let medium = if yes { Medium::Vacuum } else { Medium::Air };
             (medium, format!("VACUUM = {}", if yes { 'T' } else { 'F' }))
         }))
     }
 }
+
+/// Telescopes above the air, whose wavelengths are in vacuum (common practice; names from memory).
+const IN_SPACE: [&str; 9] = [
+    "HST", "JWST", "SPITZER", "IUE", "FUSE", "GALEX", "AKARI", "SPHEREX", "SWIFT",
+];
 
 /// A non-empty text of a header, trimmed.
 pub(super) fn text<'a>(header: &'a Header, key: &str) -> Option<&'a str> {
