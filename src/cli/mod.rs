@@ -4,6 +4,8 @@
 //! end.
 
 mod bands;
+mod efficiency;
+mod identify;
 mod measure;
 mod output;
 
@@ -24,6 +26,10 @@ enum Command {
     Measure(measure::Measure),
     /// List the bands of the line lists, with their g-factors and sources.
     Bands(bands::Bands),
+    /// Fluorescence efficiencies of an atom or molecule at the comet, or along a range.
+    Efficiency(efficiency::Efficiency),
+    /// Find the peaks of a spectrum and name the lines they can be.
+    Identify(identify::Identify),
 }
 
 /// Runs the program on the process's arguments: exit code 0 done, 1 failed, 2 usage or plan.
@@ -32,6 +38,8 @@ pub fn run() -> ExitCode {
     let done = match cli.command {
         Command::Measure(m) => m.run(),
         Command::Bands(b) => b.run(),
+        Command::Efficiency(e) => e.run(),
+        Command::Identify(i) => i.run(),
     };
     match done {
         Ok(()) => ExitCode::SUCCESS,
