@@ -16,6 +16,7 @@ macro_rules! bundled {
 }
 
 const BUNDLED: &[(&str, &[u8])] = bundled![
+    "atlas/comet_lines.csv.gz",
     "atoms/quality.csv",
     "atoms/sources.csv",
     "atoms/ca_i_levels.csv",

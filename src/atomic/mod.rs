@@ -4,6 +4,7 @@
 //! same name in a folder given by the user takes its place) and checks them. Never computes a
 //! population or a g-factor.
 
+mod atlas;
 mod atoms;
 mod bands;
 mod bundle;
@@ -15,6 +16,7 @@ mod rotational;
 mod sun;
 mod system;
 
+pub use atlas::{AtlasLine, line_atlas};
 pub use atoms::{atom, bundled_atoms};
 pub use bands::{InfraredBand, infrared_bands};
 pub use cn::cn_violet;

@@ -6,6 +6,8 @@
 mod bands;
 mod describe;
 mod geometry;
+mod efficiency;
+mod identify;
 mod measure;
 mod output;
 mod prepare;
@@ -41,6 +43,10 @@ enum Command {
     Completions(describe::Completions),
     /// Print the manual page.
     Man,
+    /// Fluorescence efficiencies of an atom or molecule at the comet, or along a range.
+    Efficiency(efficiency::Efficiency),
+    /// Find the peaks of a spectrum and name the lines they can be.
+    Identify(identify::Identify),
 }
 
 /// Runs the program on the process's arguments: exit code 0 done, 1 failed, 2 usage or plan.
@@ -55,6 +61,8 @@ pub fn run() -> ExitCode {
         Command::Schema => describe::schema(),
         Command::Completions(c) => c.run(),
         Command::Man => describe::man(),
+        Command::Efficiency(e) => e.run(),
+        Command::Identify(i) => i.run(),
     };
     match done {
         Ok(()) => ExitCode::SUCCESS,
