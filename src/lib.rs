@@ -15,6 +15,7 @@ pub mod analysis;
 pub mod atomic;
 pub mod cli;
 pub mod coma;
+pub mod comparison;
 pub mod figures;
 pub mod fit;
 pub mod frame;

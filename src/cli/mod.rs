@@ -4,6 +4,7 @@
 //! end.
 
 mod bands;
+mod compare;
 mod measure;
 mod output;
 
@@ -24,6 +25,8 @@ enum Command {
     Measure(measure::Measure),
     /// List the bands of the line lists, with their g-factors and sources.
     Bands(bands::Bands),
+    /// Say where ratios stand among known comets.
+    Compare(Box<compare::Compare>),
 }
 
 /// Runs the program on the process's arguments: exit code 0 done, 1 failed, 2 usage or plan.
@@ -32,6 +35,7 @@ pub fn run() -> ExitCode {
     let done = match cli.command {
         Command::Measure(m) => m.run(),
         Command::Bands(b) => b.run(),
+        Command::Compare(c) => c.run(),
     };
     match done {
         Ok(()) => ExitCode::SUCCESS,
