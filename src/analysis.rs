@@ -11,7 +11,7 @@ use crate::ratio::{
     BandShare, Basis, DrawSettings, Draws, FluxBlock, Lifetimes, Ratio, SpeciesPlan, draw, ratio,
 };
 use crate::spectrum::Spectrum;
-use crate::standing::{Distribution, Entry, Standing, VoteRule, one_vote_each, place};
+use crate::standing::{Entry, Estimated, Standing, VoteRule, one_vote_each, place};
 
 /// Everything the analysis needs besides the spectra, already checked.
 #[derive(Clone, Debug)]
@@ -505,14 +505,9 @@ fn ratio_result(
     let known = one_vote_each(&wanted.known, rule);
     let sample: Vec<_> = known.iter().map(Entry::censored).collect();
     let name = format!("{}/{}", wanted.of, wanted.to);
-    let standing = Distribution::estimate(&sample).and_then(|distribution| {
+    let standing = Estimated::of(&sample).and_then(|estimated| {
         let median = found.interval?.median;
-        Some(place(
-            &distribution,
-            median,
-            &found.draws,
-            settings.draws.seed,
-        ))
+        Some(place(&estimated, median, &found.draws, settings.draws.seed))
     });
     if standing.is_some_and(|s| s.comets < THIN_COMPARISON) {
         caveats.push(Caveat::ThinComparison {

@@ -16,6 +16,7 @@ pub mod atomic;
 pub mod cli;
 pub mod coma;
 pub mod efficiency;
+pub mod comparison;
 pub mod figures;
 pub mod fit;
 pub mod frame;

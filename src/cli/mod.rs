@@ -8,6 +8,7 @@ mod describe;
 mod geometry;
 mod efficiency;
 mod identify;
+mod compare;
 mod measure;
 mod output;
 mod prepare;
@@ -47,6 +48,8 @@ enum Command {
     Efficiency(efficiency::Efficiency),
     /// Find the peaks of a spectrum and name the lines they can be.
     Identify(identify::Identify),
+    /// Say where ratios stand among known comets.
+    Compare(Box<compare::Compare>),
 }
 
 /// Runs the program on the process's arguments: exit code 0 done, 1 failed, 2 usage or plan.
@@ -63,6 +66,7 @@ pub fn run() -> ExitCode {
         Command::Man => describe::man(),
         Command::Efficiency(e) => e.run(),
         Command::Identify(i) => i.run(),
+        Command::Compare(c) => c.run(),
     };
     match done {
         Ok(()) => ExitCode::SUCCESS,

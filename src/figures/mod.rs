@@ -17,6 +17,7 @@ mod lanes;
 mod marker;
 mod panel;
 mod quicklook;
+mod scatter;
 mod standing;
 mod standing_row;
 mod style;
@@ -27,6 +28,7 @@ pub use axis::Scale;
 pub use curve::{Curve, CurveFigure, Tick, VerticalMark, range_svg};
 pub use fit::{FitBand, FitFigure, FitPanel, fit_svg};
 pub use quicklook::{Position, QuicklookFigure, quicklook_svg};
+pub use scatter::{ScatterFigure, ScatterPoint, scatter_svg};
 pub use standing::{
     Bounds, ComparisonComet, ComparisonValue, StandingFigure, StandingRow, ThisComet, standing_svg,
 };

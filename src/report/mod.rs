@@ -3,12 +3,18 @@
 //! Imports floors 0–7. Returns strings; only [`write_all`] touches the disk, by writing beside the
 //! target and renaming, so that an interrupted run leaves no half file.
 
+mod comparison_figures;
+mod comparison_table;
+mod comparison_text;
 mod csv_files;
 mod json;
 mod pictures;
 mod table;
 mod write;
 
+pub use comparison_figures::{comparison_distance_figure, comparison_standing_figure};
+pub use comparison_table::{check_set_table, comparison_csv};
+pub use comparison_text::comparison_text;
 pub use csv_files::{bands_csv, fit_csv, ratios_csv, species_csv, summary_csv};
 pub use json::{Input, result_json};
 pub use pictures::{fit_figure, standing_figure};

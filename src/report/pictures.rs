@@ -188,12 +188,7 @@ fn row(result: &RatioResult, classes: &[String]) -> StandingRow {
         comets: result.known.iter().map(|e| comet(e, classes)).collect(),
         cumulative: Distribution::estimate(&sample).map_or_else(Vec::new, |d| d.steps().collect()),
         this,
-        count_text: match (result.known.len(), limits) {
-            (1, 0) => "1 comet".to_owned(),
-            (n, 0) => format!("{n} comets"),
-            (n, 1) => format!("{n} comets, 1 limit"),
-            (n, k) => format!("{n} comets, {k} limits"),
-        },
+        count_text: count_text(result.known.len(), limits),
         place_text: result.standing.map_or_else(String::new, |s| {
             format!(
                 "percentile {:.0} ({:.0}–{:.0})",
@@ -203,8 +198,32 @@ fn row(result: &RatioResult, classes: &[String]) -> StandingRow {
     }
 }
 
+/// Remark on the number of comets.
+pub(super) fn count_text(comets: usize, limits: usize) -> String {
+    match (comets, limits) {
+        (1, 0) => "1 comet".to_owned(),
+        (n, 0) => format!("{n} comets"),
+        (n, 1) => format!("{n} comets, 1 limit"),
+        (n, k) => format!("{n} comets, {k} limits"),
+    }
+}
+
 fn comet(entry: &Entry, classes: &[String]) -> ComparisonComet {
-    let value = match entry.known {
+    ComparisonComet {
+        name: entry.comet.clone(),
+        class: class_index(entry, classes),
+        value: published_value(entry),
+    }
+}
+
+/// Place of an entry's class in the list.
+pub(super) fn class_index(entry: &Entry, classes: &[String]) -> usize {
+    classes.iter().position(|c| *c == entry.class).unwrap_or(0)
+}
+
+/// A published ratio as drawn.
+pub(super) fn published_value(entry: &Entry) -> ComparisonValue {
+    match entry.known {
         Known::Value => {
             let (minus, plus) = entry.errors.unwrap_or((0.0, 0.0));
             ComparisonValue::Measured {
@@ -217,10 +236,5 @@ fn comet(entry: &Entry, classes: &[String]) -> ComparisonComet {
         }
         Known::Upper => ComparisonValue::UpperLimit(entry.value),
         Known::Lower => ComparisonValue::LowerLimit(entry.value),
-    };
-    ComparisonComet {
-        name: entry.comet.clone(),
-        class: classes.iter().position(|c| *c == entry.class).unwrap_or(0),
-        value,
     }
 }

@@ -2,10 +2,9 @@
 
 use super::Checker;
 use crate::analysis::{BandSettings, RatioSettings};
+use crate::comparison::{Selection, entries};
 use crate::ground::{Error, Result, Species, did_you_mean};
 use crate::ratio::Basis;
-use crate::standing::{Entry, Known};
-use crate::tables::{Confidence, Kind};
 
 impl Checker<'_> {
     pub(super) fn ratios(&mut self, bands: &[BandSettings]) -> Result<Vec<RatioSettings>> {
@@ -78,52 +77,12 @@ impl Checker<'_> {
                 ));
             }
         }
-        let known = self.known(&of, &to, basis);
+        let known = entries(self.tables, &of, &to, basis, &Selection::default());
         Ok(RatioSettings {
             of,
             to,
             basis,
             known,
         })
-    }
-
-    /// Published measurements of the same ratio on the same footing; rows of low confidence stay
-    /// out.
-    fn known(&self, of: &Species, to: &Species, basis: Basis) -> Vec<Entry> {
-        let same_basis = |row: &crate::tables::ComparisonRow| match basis {
-            Basis::Production => row.basis == crate::tables::Basis::Production,
-            Basis::Column => row.basis == crate::tables::Basis::Column,
-        };
-        let linear = |row: &crate::tables::ComparisonRow, v: f64| {
-            if row.log10 { 10f64.powf(v) } else { v }
-        };
-        self.tables
-            .comparison()
-            .iter()
-            .filter(|r| {
-                r.of == *of && r.to == *to && same_basis(r) && r.confidence >= Confidence::Medium
-            })
-            .map(|r| {
-                let value = linear(r, r.value);
-                let errors = r.err_minus.zip(r.err_plus).map(|(minus, plus)| {
-                    (
-                        value - linear(r, r.value - minus),
-                        linear(r, r.value + plus) - value,
-                    )
-                });
-                Entry {
-                    comet: r.comet.clone(),
-                    class: r.class.as_str().to_owned(),
-                    value,
-                    errors,
-                    known: match r.kind {
-                        Kind::Value => Known::Value,
-                        Kind::Upper => Known::Upper,
-                        Kind::Lower => Known::Lower,
-                    },
-                    heliocentric_au: r.r_h_au,
-                }
-            })
-            .collect()
     }
 }
