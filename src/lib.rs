@@ -21,6 +21,7 @@ pub mod frame;
 pub mod ground;
 pub mod plan;
 pub mod ratio;
+pub mod rehearse;
 pub mod report;
 pub mod spectrum;
 pub mod standing;

@@ -131,7 +131,7 @@ impl Measure {
     }
 }
 
-fn load_tables(file: &PlanFile) -> Result<Tables> {
+pub(super) fn load_tables(file: &PlanFile) -> Result<Tables> {
     let place = |name: &Option<String>| name.as_ref().map(|n| file.folder().join(n));
     let (lists, comparison) = (
         place(&file.plan.tables.line_lists),
@@ -140,7 +140,7 @@ fn load_tables(file: &PlanFile) -> Result<Tables> {
     Tables::load(lists.as_deref(), comparison.as_deref())
 }
 
-fn read_spectra(files: &[(PathBuf, TextLayout)]) -> Result<Vec<Spectrum>> {
+pub(super) fn read_spectra(files: &[(PathBuf, TextLayout)]) -> Result<Vec<Spectrum>> {
     files
         .iter()
         .map(|(path, layout)| read_text(path, layout).map_err(|e| e.in_file(path)))

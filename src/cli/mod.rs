@@ -6,6 +6,7 @@
 mod bands;
 mod measure;
 mod output;
+mod rehearse;
 
 use clap::{Parser, Subcommand};
 use std::process::ExitCode;
@@ -24,6 +25,8 @@ enum Command {
     Measure(measure::Measure),
     /// List the bands of the line lists, with their g-factors and sources.
     Bands(bands::Bands),
+    /// Repeat the analysis on the fitted model with fresh noise: bias, coverage, detections.
+    Rehearse(rehearse::Rehearse),
 }
 
 /// Runs the program on the process's arguments: exit code 0 done, 1 failed, 2 usage or plan.
@@ -32,6 +35,7 @@ pub fn run() -> ExitCode {
     let done = match cli.command {
         Command::Measure(m) => m.run(),
         Command::Bands(b) => b.run(),
+        Command::Rehearse(r) => r.run(),
     };
     match done {
         Ok(()) => ExitCode::SUCCESS,

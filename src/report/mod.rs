@@ -6,12 +6,14 @@
 mod csv_files;
 mod json;
 mod pictures;
+mod rehearsal;
 mod table;
 mod write;
 
 pub use csv_files::{bands_csv, fit_csv, ratios_csv, species_csv, summary_csv};
 pub use json::{Input, result_json};
 pub use pictures::{fit_figure, standing_figure};
+pub use rehearsal::{rehearsal_csv, rehearsal_figure, rehearsal_table};
 pub use table::summary_table;
 pub use write::write_all;
 
