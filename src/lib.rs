@@ -17,6 +17,7 @@ pub mod cli;
 pub mod coma;
 pub mod figures;
 pub mod fit;
+pub mod forward;
 pub mod frame;
 pub mod ground;
 pub mod plan;

@@ -7,6 +7,7 @@ mod bands;
 mod measure;
 mod output;
 mod rehearse;
+mod simulate;
 
 use clap::{Parser, Subcommand};
 use std::process::ExitCode;
@@ -27,6 +28,8 @@ enum Command {
     Bands(bands::Bands),
     /// Repeat the analysis on the fitted model with fresh noise: bias, coverage, detections.
     Rehearse(rehearse::Rehearse),
+    /// Make the spectrum of a given composition, and say what exposures can detect.
+    Simulate(simulate::Simulate),
 }
 
 /// Runs the program on the process's arguments: exit code 0 done, 1 failed, 2 usage or plan.
@@ -36,6 +39,7 @@ pub fn run() -> ExitCode {
         Command::Measure(m) => m.run(),
         Command::Bands(b) => b.run(),
         Command::Rehearse(r) => r.run(),
+        Command::Simulate(s) => s.run(),
     };
     match done {
         Ok(()) => ExitCode::SUCCESS,

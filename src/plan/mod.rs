@@ -13,5 +13,6 @@ pub use document::{PlanFile, read_plan};
 pub use resolve::to_toml;
 pub use schema::{
     AperturePlan, BandPlan, ColumnPlan, ColumnsPlan, ComaPlan, CometPlan, ContinuumPlan, DrawsPlan,
-    LifetimePlan, MeasurePlan, Plan, SpectrumPlan, TablesPlan,
+    LifetimePlan, MeasurePlan, Plan, SimulateContinuumPlan, SimulateNoisePlan, SimulatePlan,
+    SpectrumPlan, TablesPlan,
 };

@@ -32,6 +32,13 @@ pub fn rehearsal_table(rehearsed: &Rehearsed, label: &str) -> String {
          Bias is mean(value − truth) over the median error; fluxes in erg/s/cm².\n",
     );
     out.push_str(intervals_are(rehearsed));
+    let missed = |r: &Recovered| r.quantity == Quantity::Ratio && r.detected.count < r.detected.of;
+    if rehearsed.rows.iter().any(missed) {
+        out.push_str(
+            "Only trials that detect both species give an interval of their ratio: where some do not, the\n\
+             faint ones are missing, which shifts bias and coverage; their limits are judged at the right.\n",
+        );
+    }
     if let Some(why) = &rehearsed.first_failure {
         out.push_str(&format!(
             "{} trials gave no answer; the first: {why}\n",

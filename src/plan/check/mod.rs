@@ -6,9 +6,11 @@ mod coma;
 mod convert;
 mod efficiency;
 mod ratios;
+mod simulate;
 
 use crate::analysis::{Settings, SpectrumSettings};
 use crate::fit::{FitSettings, Sampling};
+use crate::forward::SceneSettings;
 use crate::frame::{Frame, Geometry};
 use crate::ground::{Caveat, Error, FluxUnit, Medium, Result, WavelengthUnit};
 use crate::plan::document::PlanFile;
@@ -27,6 +29,8 @@ pub struct Checked {
     pub settings: Settings,
     /// Paths of the spectra and their layouts.
     pub files: Vec<(PathBuf, TextLayout)>,
+    /// What to simulate, where the plan says.
+    pub scene: Option<SceneSettings>,
     /// The plan with all defaults filled in and paths made absolute.
     pub resolved: Plan,
 }
@@ -46,9 +50,11 @@ pub fn check(file: &PlanFile, tables: &Tables) -> Result<Checked> {
     };
     let settings = checker.settings()?;
     let files = checker.files()?;
+    let scene = checker.scene(&settings)?;
     Ok(Checked {
         settings,
         files,
+        scene,
         resolved: plan,
     })
 }
