@@ -2,13 +2,11 @@
 
 use super::measure::load_tables;
 use super::output;
-use crate::analysis::Settings;
 use crate::figures::Width;
 use crate::forward::{SceneSettings, expect};
 use crate::ground::{Error, Result};
-use crate::plan::{check, read_plan};
+use crate::plan::{Checked, check, read_plan};
 use crate::report;
-use crate::spectrum::TextLayout;
 use clap::Args;
 use std::path::{Path, PathBuf};
 
@@ -72,7 +70,7 @@ impl Simulate {
         let exposure_s = self.exposure.unwrap_or(scene.noise.exposure_s);
         positive("exposure", exposure_s)?;
         let seed = self.seed.unwrap_or(settings.draws.seed);
-        let csv = spectrum_csv(scene, settings, &checked.files[0].1, exposure_s, seed)?;
+        let csv = spectrum_csv(scene, &checked, exposure_s, seed)?;
         let expected = expect(scene, settings, &times)?;
         let target = self.out.clone().unwrap_or_else(|| default_file(&self.plan));
         let figure = report::expected_figure(&expected, settings, Width::Double)?;
@@ -120,18 +118,26 @@ fn positive(name: &str, seconds: f64) -> Result<()> {
 /// that the plan reads it.
 fn spectrum_csv(
     scene: &SceneSettings,
-    settings: &Settings,
-    layout: &TextLayout,
+    checked: &Checked,
     exposure_s: f64,
     seed: u64,
 ) -> Result<String> {
+    let (settings, layout) = (&checked.settings, &checked.files[0].1);
     let samples = scene.samples(settings, exposure_s, Some(seed))?;
     let area = if layout.flux_unit.per_area() {
         settings.aperture.area_arcsec2()
     } else {
         1.0
     };
-    report::simulated_csv(&samples, layout, area, exposure_s)
+    let units = &checked.resolved.spectrum[0];
+    let what = format!(
+        "Simulated {}, {exposure_s} s, seed {seed}; wavelength in {} ({}), flux density and error in {}",
+        settings.label.replace(['\n', '\r'], " "),
+        units.wavelength_unit,
+        layout.medium,
+        units.flux_unit
+    );
+    report::simulated_csv(&samples, layout, area, &what)
 }
 
 fn name_of(path: &Path) -> Result<&str> {

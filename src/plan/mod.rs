@@ -8,7 +8,7 @@ mod document;
 mod resolve;
 mod schema;
 
-pub use check::{check, default_bands_in};
+pub use check::{Checked, check, default_bands_in};
 pub use document::{PlanFile, read_plan};
 pub use resolve::to_toml;
 pub use schema::{

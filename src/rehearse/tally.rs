@@ -39,7 +39,7 @@ pub struct Recovered {
     pub coverage95: Share,
     /// Trials that detect the band, or both species of the ratio.
     pub detected: Share,
-    /// Trials whose 99.7 % limit lies on the wrong side of the truth, of those that give a limit.
+    /// Trials that quote a 99.7 % limit on the wrong side of the truth, of all trials.
     pub limit_wrong: Share,
 }
 
@@ -74,10 +74,10 @@ fn band_row(scene: &Scene, trials: &[Trial], b: usize) -> Recovered {
             }
         })
         .collect();
-    let limits = trials.iter().filter_map(|t| t.bands[b].limit);
+    let limits = trials.iter().map(|t| t.bands[b].limit);
     Recovered {
         detected: Share::count(trials.iter().map(|t| t.bands[b].detected)),
-        limit_wrong: Share::count(limits.map(|l| l < truth)),
+        limit_wrong: Share::count(limits.map(|l| l.is_some_and(|l| l < truth))),
         ..row(fit.id.clone(), Quantity::Flux, truth, &estimates)
     }
 }
@@ -97,7 +97,7 @@ fn ratio_row(scene: &Scene, trials: &[Trial], r: usize) -> Recovered {
         .collect();
     Recovered {
         detected: Share::count(own().map(|t| t.kind == RatioKind::Value)),
-        limit_wrong: Share::count(own().filter_map(|t| limit_is_wrong(t, truth))),
+        limit_wrong: Share::count(own().map(|t| limit_is_wrong(t, truth))),
         ..row(
             format!("{}/{}", ratio.of, ratio.to),
             Quantity::Ratio,
@@ -107,13 +107,12 @@ fn ratio_row(scene: &Scene, trials: &[Trial], r: usize) -> Recovered {
     }
 }
 
-fn limit_is_wrong(trial: &RatioTrial, truth: f64) -> Option<bool> {
-    let limit = trial.limit?;
-    match trial.kind {
-        RatioKind::Upper => Some(limit < truth),
-        RatioKind::Lower => Some(limit > truth),
-        RatioKind::Value | RatioKind::Unconstrained => None,
-    }
+fn limit_is_wrong(trial: &RatioTrial, truth: f64) -> bool {
+    trial.limit.is_some_and(|limit| match trial.kind {
+        RatioKind::Upper => limit < truth,
+        RatioKind::Lower => limit > truth,
+        RatioKind::Value | RatioKind::Unconstrained => false,
+    })
 }
 
 fn row(name: String, quantity: Quantity, truth: f64, estimates: &[Estimate]) -> Recovered {

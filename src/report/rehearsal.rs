@@ -36,7 +36,7 @@ pub fn rehearsal_table(rehearsed: &Rehearsed, label: &str) -> String {
     if rehearsed.rows.iter().any(missed) {
         out.push_str(
             "Only trials that detect both species give an interval of their ratio: where some do not, the\n\
-             faint ones are missing, which shifts bias and coverage; their limits are judged at the right.\n",
+             faint ones are missing, which shifts bias and coverage; their 99.7 % limits are judged at the right.\n",
         );
     }
     if let Some(why) = &rehearsed.first_failure {
@@ -136,7 +136,6 @@ pub fn rehearsal_csv(rehearsed: &Rehearsed) -> String {
         "coverage95_low",
         "coverage95_high",
         "detected",
-        "limits",
         "limit_wrong",
         "interval_holds",
     ];
@@ -173,7 +172,6 @@ fn csv_row(r: &Recovered, holds: &str) -> Vec<String> {
         out.push(cell(bounds.map(|b| b.1)));
     }
     out.push(cell(r.detected.value()));
-    out.push(r.limit_wrong.of.to_string());
     out.push(cell(r.limit_wrong.value()));
     out.push(holds.to_owned());
     out

@@ -9,8 +9,8 @@ use crate::forward::{Expected, SimulatedSample};
 use crate::ground::{Error, Result};
 use crate::spectrum::{Column, TextLayout};
 
-/// The spectrum in the units of a layout and under its column names; `area_arcsec2` divides a surface
-/// brightness.
+/// The spectrum in the units of a layout and under its column names, after a comment line that says
+/// `what` it is; `area_arcsec2` divides a surface brightness.
 ///
 /// # Errors
 /// A layout that finds its columns by number, other than 1, 2, 3, or that has a mask column.
@@ -18,7 +18,7 @@ pub fn simulated_csv(
     samples: &[SimulatedSample],
     layout: &TextLayout,
     area_arcsec2: f64,
-    exposure_s: f64,
+    what: &str,
 ) -> Result<String> {
     let header = [
         name(layout.wavelength.as_ref(), "wavelength", 1)?,
@@ -38,13 +38,7 @@ pub fn simulated_csv(
             shortest(shown(s.sigma_erg_s_cm2_aa)),
         ]
     });
-    Ok(format!(
-        "# Simulated spectrum, {exposure_s} s; wavelength in {}, {}; flux density and error in {}\n{}",
-        layout.wavelength_unit,
-        layout.medium,
-        layout.flux_unit,
-        csv_table(&cells, rows)
-    ))
+    Ok(format!("# {what}\n{}", csv_table(&cells, rows)))
 }
 
 fn name(column: Option<&Column>, default: &str, place: usize) -> Result<String> {
@@ -66,9 +60,7 @@ fn refusal(column: &str) -> Error {
 /// Expected signal-to-noise and faintest ratios for people.
 pub fn expected_table(expected: &[Expected], settings: &Settings) -> String {
     let mut out = format!("{}: expected S/N of the bands\n\n", settings.label);
-    let times = expected
-        .iter()
-        .map(|e| format!("{} s", plain(e.exposure_s)));
+    let times = expected.iter().map(|e| format!("{} s", e.exposure_s));
     let mut header = vec!["band".to_owned(), "flux erg/s/cm²".to_owned()];
     header.extend(times.clone());
     let first = expected.first();
