@@ -4,7 +4,8 @@
 //! geometry to band fluxes, Gaussian bands on a continuum of reflected sunlight and heat, Gaussian
 //! noise with a fixed seed. README.md beside this file holds the truth.
 
-use comagauge::coma::{ApertureKm, Lengths, molecules_km, molecules_per_flux};
+use comagauge::coma::{ApertureKm, Lengths};
+use comagauge::forward::{band_flux_erg_s_cm2, gaussian_per_aa, grid_aa};
 use comagauge::frame::Aperture;
 use comagauge::ground::constants::{HC_ERG_AA, HC_OVER_K_CM_K, LIGHT_AA_S, LIGHT_KM_S};
 use comagauge::ground::{Species, air_from_vacuum_aa};
@@ -81,11 +82,8 @@ const OPTICAL: Scene = Scene {
 
 impl Scene {
     fn wavelengths_aa(&self) -> Vec<f64> {
-        let step = 1.0 / (self.resolving_power * self.samples_per_fwhm);
-        let count = ((self.range_aa.1 / self.range_aa.0).ln() / step) as usize;
-        (0..count)
-            .map(|i| self.range_aa.0 * (step * i as f64).exp())
-            .collect()
+        let (low, high) = self.range_aa;
+        grid_aa(low, high, self.resolving_power, self.samples_per_fwhm)
     }
 
     /// Rest centre, full width with the instrument's, and flux of every band.
@@ -100,9 +98,14 @@ impl Scene {
                 let band = tables.band(id).expect("a band of the line lists");
                 let g = tables.default_efficiency(id).expect("a g-factor");
                 let (lengths, speed) = self.coma(tables, &band.species);
-                let molecules = production * molecules_km(&lengths, &km) / speed;
-                let g = g.g_at_photons_s(self.heliocentric_au);
-                let flux = molecules / molecules_per_flux(g, band.centre_aa, self.observer_au);
+                let flux = band_flux_erg_s_cm2(
+                    *production,
+                    (&lengths, speed),
+                    &km,
+                    g.g_at_photons_s(self.heliocentric_au),
+                    band.centre_aa,
+                    self.observer_au,
+                );
                 let fwhm = band.fwhm_aa.hypot(band.centre_aa / self.resolving_power);
                 (band.centre_aa, fwhm, flux)
             })
@@ -159,7 +162,10 @@ impl Scene {
             .into_iter()
             .map(|x| {
                 let rest = x / doppler;
-                let emission: f64 = bands.iter().map(|b| gaussian(rest, *b)).sum();
+                let emission: f64 = bands
+                    .iter()
+                    .map(|(centre, fwhm, flux)| flux * gaussian_per_aa(rest, *centre, *fwhm))
+                    .sum();
                 let clean = self.continuum(tables, rest) + emission;
                 let sigma = (self.noise.0 * clean).hypot(self.noise.1);
                 let noise: f64 = StandardNormal.sample(&mut rng);
@@ -167,12 +173,6 @@ impl Scene {
             })
             .collect()
     }
-}
-
-fn gaussian(x: f64, (centre, fwhm, flux): (f64, f64, f64)) -> f64 {
-    let sigma = fwhm / (8.0 * 2f64.ln()).sqrt();
-    let u = (x - centre) / sigma;
-    flux / (sigma * (2.0 * std::f64::consts::PI).sqrt()) * (-0.5 * u * u).exp()
 }
 
 /// Planck function, erg s⁻¹ cm⁻² Å⁻¹ sr⁻¹.

@@ -132,7 +132,7 @@ impl Measure {
     }
 }
 
-fn load_tables(file: &PlanFile) -> Result<Tables> {
+pub(super) fn load_tables(file: &PlanFile) -> Result<Tables> {
     let place = |name: &Option<String>| name.as_ref().map(|n| file.folder().join(n));
     let (lists, comparison) = (
         place(&file.plan.tables.line_lists),
@@ -141,7 +141,9 @@ fn load_tables(file: &PlanFile) -> Result<Tables> {
     Tables::load(lists.as_deref(), comparison.as_deref())
 }
 
-fn read_spectra(files: &[(PathBuf, Layout)]) -> Result<(Vec<Spectrum>, Vec<Option<Understood>>)> {
+pub(super) fn read_spectra(
+    files: &[(PathBuf, Layout)],
+) -> Result<(Vec<Spectrum>, Vec<Option<Understood>>)> {
     let read = files
         .iter()
         .map(|(path, layout)| read_spectrum(path, layout))

@@ -4,16 +4,18 @@
 //! end.
 
 mod bands;
-mod describe;
-mod geometry;
-mod efficiency;
-mod identify;
 mod compare;
+mod describe;
+mod efficiency;
+mod geometry;
+mod identify;
 mod measure;
 mod output;
 mod prepare;
 mod reading;
+mod rehearse;
 mod show;
+mod simulate;
 
 use clap::{Parser, Subcommand};
 use std::process::ExitCode;
@@ -50,6 +52,10 @@ enum Command {
     Identify(identify::Identify),
     /// Say where ratios stand among known comets.
     Compare(Box<compare::Compare>),
+    /// Repeat the analysis on the fitted model with fresh noise: bias, coverage, detections.
+    Rehearse(rehearse::Rehearse),
+    /// Make the spectrum of a given composition, and say what exposures can detect.
+    Simulate(simulate::Simulate),
 }
 
 /// Runs the program on the process's arguments: exit code 0 done, 1 failed, 2 usage or plan.
@@ -67,6 +73,8 @@ pub fn run() -> ExitCode {
         Command::Efficiency(e) => e.run(),
         Command::Identify(i) => i.run(),
         Command::Compare(c) => c.run(),
+        Command::Rehearse(r) => r.run(),
+        Command::Simulate(s) => s.run(),
     };
     match done {
         Ok(()) => ExitCode::SUCCESS,

@@ -9,6 +9,7 @@
 
 mod axis;
 mod canvas;
+mod coverage;
 mod curve;
 mod fit;
 mod fit_panel;
@@ -25,6 +26,7 @@ mod text;
 mod thin;
 
 pub use axis::Scale;
+pub use coverage::{CoverageFigure, CoveragePoint, CoverageRow, coverage_svg};
 pub use curve::{Curve, CurveFigure, Tick, VerticalMark, range_svg};
 pub use fit::{FitBand, FitFigure, FitPanel, fit_svg};
 pub use quicklook::{Position, QuicklookFigure, quicklook_svg};

@@ -39,6 +39,11 @@ pub(super) fn defaults(plan: &Plan, folder: &Path) -> Plan {
     coma.sun.get_or_insert_with(|| "quiet".to_owned());
     out.draws.count.get_or_insert(10_000);
     out.draws.seed.get_or_insert(1);
+    if let Some(simulate) = &mut out.simulate {
+        simulate.samples_per_fwhm.get_or_insert(2.5);
+        simulate.continuum.slope_per_1000_aa.get_or_insert(0.0);
+        simulate.noise.relative.get_or_insert(0.0);
+    }
     for folder in [&mut out.tables.line_lists, &mut out.tables.comparison]
         .into_iter()
         .flatten()

@@ -3,6 +3,7 @@
 use crate::fit::Freedom;
 use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
+use std::collections::BTreeMap;
 
 /// A plan: which spectra, of which comet, what to measure and how.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
@@ -31,6 +32,9 @@ pub struct Plan {
     /// The random draws.
     #[serde(default)]
     pub draws: DrawsPlan,
+    /// What `simulate` makes; other commands do not use it.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub simulate: Option<SimulatePlan>,
     /// Tables that replace the built-in ones.
     #[serde(default, skip_serializing_if = "TablesPlan::is_default")]
     pub tables: TablesPlan,
@@ -407,4 +411,47 @@ impl TablesPlan {
     fn is_default(&self) -> bool {
         *self == Self::default()
     }
+}
+
+/// A spectrum to be simulated through the first `[[spectrum]]`, in whose units all values are.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct SimulatePlan {
+    /// First and last wavelength.
+    pub range: [f64; 2],
+    /// Samples per resolution element (default 2.5).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub samples_per_fwhm: Option<f64>,
+    /// Production rates by species, molecules per second.
+    pub production: BTreeMap<String, f64>,
+    /// The continuum.
+    pub continuum: SimulateContinuumPlan,
+    /// The noise.
+    pub noise: SimulateNoisePlan,
+}
+
+/// A straight continuum: flux_density · (1 + slope_per_1000_aa · (λ − at)/1000 Å).
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct SimulateContinuumPlan {
+    /// Flux density in the spectrum's flux unit.
+    pub flux_density: f64,
+    /// Wavelength it belongs to.
+    pub at: f64,
+    /// Relative change per 1000 Å (default 0).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub slope_per_1000_aa: Option<f64>,
+}
+
+/// Noise per sample: the two parts in square, times √(exposure_s / exposure).
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct SimulateNoisePlan {
+    /// Part that is proportional to the flux (default 0).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub relative: Option<f64>,
+    /// Constant part, in the spectrum's flux unit at the continuum's wavelength.
+    pub floor: f64,
+    /// The exposure in s to which both belong.
+    pub exposure_s: f64,
 }

@@ -4,7 +4,7 @@ use super::cell;
 use crate::analysis::Analysis;
 use crate::fit::{SpectrumFit, WindowFit};
 
-fn table(header: &[&str], rows: impl IntoIterator<Item = Vec<String>>) -> String {
+pub(super) fn table(header: &[&str], rows: impl IntoIterator<Item = Vec<String>>) -> String {
     let mut writer = csv::Writer::from_writer(Vec::new());
     writer
         .write_record(header)

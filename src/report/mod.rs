@@ -9,6 +9,8 @@ mod comparison_text;
 mod csv_files;
 mod json;
 mod pictures;
+mod rehearsal;
+mod simulated;
 mod table;
 mod write;
 
@@ -18,6 +20,8 @@ pub use comparison_text::comparison_text;
 pub use csv_files::{bands_csv, fit_csv, ratios_csv, species_csv, summary_csv};
 pub use json::{Input, result_json};
 pub use pictures::{fit_figure, standing_figure};
+pub use rehearsal::{rehearsal_csv, rehearsal_figure, rehearsal_table};
+pub use simulated::{expected_csv, expected_figure, expected_table, simulated_csv};
 pub use table::summary_table;
 pub use write::write_all;
 

@@ -39,7 +39,7 @@ pub fn summary_table(analysis: &Analysis, settings: &Settings) -> String {
     out
 }
 
-fn grid(header: &[&str], rows: Vec<Vec<String>>) -> String {
+pub(super) fn grid(header: &[&str], rows: Vec<Vec<String>>) -> String {
     let mut table = Table::new();
     table.load_style(presets::NOTHING).set_header(header);
     for row in rows {
@@ -183,12 +183,12 @@ fn pair(m: Measured) -> String {
     )
 }
 
-fn power(v: f64) -> String {
+pub(super) fn power(v: f64) -> String {
     format!("{v:.2e}")
 }
 
 /// Three digits, plain between 0.001 and 1000.
-fn plain(v: f64) -> String {
+pub(super) fn plain(v: f64) -> String {
     if v == 0.0 || !(1e-3..1e3).contains(&v.abs()) {
         return format!("{v:.2e}");
     }

@@ -1,6 +1,7 @@
 //! What to look at: the spectra of a plan, or one spectrum with its units on the command line.
 
 use super::Identify;
+use crate::cli::measure::read_spectra;
 use crate::coma::equilibrium::Conditions;
 use crate::fit::Resolution;
 use crate::frame::{Aperture, Frame, Geometry, RestSpectrum, to_rest};
@@ -68,18 +69,18 @@ fn planned(given: &Identify) -> Result<Job> {
         .or_else(|| place(&file.plan.tables.line_lists));
     let comparison = place(&file.plan.tables.comparison);
     let tables = Tables::load(line_lists.as_deref(), comparison.as_deref())?;
-    let checked = check(&file, &tables)?;
+    let mut checked = check(&file, &tables)?;
+    let (spectra, understood) = read_spectra(&checked.files)?;
+    checked.settle_frames(&file, &understood)?;
     let settings = &checked.settings;
-    let tasks = checked.files.iter().zip(&settings.spectra);
-    let tasks = tasks
-        .map(|((path, layout), how)| {
-            let spectrum = read_text(path, layout)?;
-            Ok(Task {
-                spectrum: to_rest(&spectrum, how.frame, &settings.geometry, &settings.aperture),
-                resolution: how.fit.resolution,
-            })
+    let tasks = spectra
+        .iter()
+        .zip(&settings.spectra)
+        .map(|(spectrum, how)| Task {
+            spectrum: to_rest(spectrum, how.frame, &settings.geometry, &settings.aperture),
+            resolution: how.fit.resolution,
         })
-        .collect::<Result<_>>()?;
+        .collect();
     let geometry = settings.geometry;
     Ok(Job {
         tasks,

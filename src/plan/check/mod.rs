@@ -8,11 +8,13 @@ mod convert;
 mod efficiency;
 mod geometry;
 mod ratios;
+mod simulate;
 mod spectra;
 
 pub use geometry::{instant, orbit, site};
 
 use crate::analysis::Settings;
+use crate::forward::SceneSettings;
 use crate::ground::{Caveat, Error, Result};
 use crate::plan::document::PlanFile;
 use crate::plan::resolve::defaults;
@@ -31,6 +33,8 @@ pub struct Checked {
     pub settings: Settings,
     /// Paths of the spectra and their layouts.
     pub files: Vec<(PathBuf, Layout)>,
+    /// What to simulate, where the plan says.
+    pub scene: Option<SceneSettings>,
     /// The plan with all defaults filled in and paths made absolute.
     pub resolved: Plan,
 }
@@ -50,9 +54,11 @@ pub fn check(file: &PlanFile, tables: &Tables) -> Result<Checked> {
     };
     let settings = checker.settings()?;
     let files = checker.files()?;
+    let scene = checker.scene(&settings)?;
     Ok(Checked {
         settings,
         files,
+        scene,
         resolved: plan,
     })
 }

@@ -199,7 +199,7 @@ impl Checker<'_> {
             .collect()
     }
 
-    fn flux_unit(&self, i: usize) -> Result<Option<FluxUnit>> {
+    pub(super) fn flux_unit(&self, i: usize) -> Result<Option<FluxUnit>> {
         let at = i.to_string();
         match &self.plan.spectrum[i].flux_unit {
             Some(text) => FluxUnit::parse(text)

@@ -1,0 +1,242 @@
+//! A scene: what a comet of given composition would look like through the instrument.
+
+use super::{band_flux_erg_s_cm2, gaussian_per_aa, grid_aa};
+use crate::analysis::Settings;
+use crate::coma::ApertureKm;
+use crate::fit::Resolution;
+use crate::frame::Frame;
+use crate::ground::constants::LIGHT_KM_S;
+use crate::ground::{Error, Result, Species, did_you_mean};
+use crate::spectrum::{Columns, LineNumbers, Spectrum};
+use rand::SeedableRng;
+use rand_distr::{Distribution, StandardNormal};
+use rand_xoshiro::Xoshiro256PlusPlus;
+
+/// A straight continuum: F(λ) = F₀ [1 + s (λ − λ₀)/1000 Å], in the frame of the observer.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct StraightContinuum {
+    /// F₀, erg s⁻¹ cm⁻² Å⁻¹ in the aperture.
+    pub flux_erg_s_cm2_aa: f64,
+    /// λ₀, vacuum Å.
+    pub at_aa: f64,
+    /// s, per 1000 Å.
+    pub slope_per_1000_aa: f64,
+}
+
+/// Noise of one sample, σ = √((r F)² + σ₀²) · √(t₀/t).
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Noise {
+    /// r, the part that grows with the flux.
+    pub relative: f64,
+    /// σ₀, erg s⁻¹ cm⁻² Å⁻¹.
+    pub floor_erg_s_cm2_aa: f64,
+    /// t₀, the exposure to which both belong, s.
+    pub exposure_s: f64,
+}
+
+/// What to simulate, besides the checked settings of the plan.
+#[derive(Clone, Debug, PartialEq)]
+pub struct SceneSettings {
+    /// Production rates, s⁻¹. A measured species that is not named emits nothing.
+    pub production_per_s: Vec<(Species, f64)>,
+    /// The continuum.
+    pub continuum: StraightContinuum,
+    /// The noise.
+    pub noise: Noise,
+    /// Range, vacuum Å in the observer's frame.
+    pub range_aa: (f64, f64),
+    /// Samples per resolution element.
+    pub samples_per_fwhm: f64,
+    /// Instrument.
+    pub resolution: Resolution,
+}
+
+/// A band of the scene.
+#[derive(Clone, Debug, PartialEq)]
+pub struct SceneBand {
+    /// Identifier.
+    pub id: String,
+    /// Its species.
+    pub species: Option<Species>,
+    /// Rest centre, vacuum Å.
+    pub centre_aa: f64,
+    /// Full width with the instrument's, Å.
+    pub fwhm_aa: f64,
+    /// Flux, erg s⁻¹ cm⁻².
+    pub flux_erg_s_cm2: f64,
+}
+
+/// One sample of a simulated spectrum.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct SimulatedSample {
+    /// Vacuum wavelength in the observer's frame, Å.
+    pub wavelength_aa: f64,
+    /// Flux density, erg s⁻¹ cm⁻² Å⁻¹.
+    pub flux_erg_s_cm2_aa: f64,
+    /// Its error, same unit.
+    pub sigma_erg_s_cm2_aa: f64,
+}
+
+impl SceneSettings {
+    /// Fluxes of the plan's bands inside the range; a band without g or coma model emits nothing
+    /// unless its species has a production rate.
+    ///
+    /// # Errors
+    /// A production rate of a species that no band in the range shows, or whose g or coma model is
+    /// not known.
+    pub fn bands(&self, settings: &Settings) -> Result<Vec<SceneBand>> {
+        let km = ApertureKm::at(&settings.aperture, settings.geometry.observer_au);
+        let mut out = Vec::new();
+        for band in &settings.bands {
+            let centre_aa = band.model.centre_aa;
+            let seen = centre_aa * self.doppler(settings);
+            if !(self.range_aa.0 < seen && seen < self.range_aa.1) {
+                continue;
+            }
+            let fwhm = band.model.fwhm_aa.unwrap_or(0.0);
+            let rate = band.species.as_ref().map_or(0.0, |s| self.rate(s));
+            let mut flux_erg_s_cm2 = 0.0;
+            if rate != 0.0 {
+                let coma = settings
+                    .species
+                    .iter()
+                    .find(|s| Some(&s.species) == band.species.as_ref());
+                let (Some(g), Some(coma)) = (&band.efficiency, coma.and_then(|s| s.coma.as_ref()))
+                else {
+                    return Err(Error::plan(format!(
+                        "band {}: a production rate is given, but g or the scale lengths are not known",
+                        band.model.id
+                    ))
+                    .remedy("give g_photons_s in a [[band]] table and lengths in a [[lifetime]] table"));
+                };
+                flux_erg_s_cm2 = band_flux_erg_s_cm2(
+                    rate,
+                    (&coma.lengths, coma.speed_km_s),
+                    &km,
+                    g.g_photons_s,
+                    centre_aa,
+                    settings.geometry.observer_au,
+                );
+            }
+            out.push(SceneBand {
+                id: band.model.id.clone(),
+                species: band.species.clone(),
+                centre_aa,
+                fwhm_aa: fwhm.hypot(self.resolution.fwhm_aa(centre_aa)),
+                flux_erg_s_cm2,
+            });
+        }
+        self.check_species(&out)?;
+        Ok(out)
+    }
+
+    fn check_species(&self, bands: &[SceneBand]) -> Result<()> {
+        let shown = || bands.iter().filter_map(|b| b.species.as_ref());
+        for (species, _) in &self.production_per_s {
+            if shown().any(|s| s == species) {
+                continue;
+            }
+            let known: Vec<&str> = shown().map(Species::as_str).collect();
+            let mut remedy = format!("species with a band in the range: {}", known.join(", "));
+            if let Some(near) = did_you_mean(species.as_str(), known.iter().copied()) {
+                remedy = format!("did you mean {near}? {remedy}");
+            }
+            return Err(Error::plan(format!(
+                "a production rate of {species} is given, but no measured band in the range is of it"
+            ))
+            .remedy(remedy));
+        }
+        Ok(())
+    }
+
+    /// The production rate of a species, 0 when none is given.
+    pub fn rate(&self, species: &Species) -> f64 {
+        let mut rates = self.production_per_s.iter();
+        rates.find(|(s, _)| s == species).map_or(0.0, |(_, q)| *q)
+    }
+
+    /// The same scene with another rate of one species.
+    #[must_use]
+    pub fn with_rate(&self, species: &Species, production_per_s: f64) -> Self {
+        let mut out = self.clone();
+        out.production_per_s.retain(|(s, _)| s != species);
+        out.production_per_s
+            .push((species.clone(), production_per_s));
+        out
+    }
+
+    /// λ_observed/λ_rest of the first spectrum's frame.
+    fn doppler(&self, settings: &Settings) -> f64 {
+        let velocity = match settings.spectra[0].frame {
+            Frame::Observer => settings.geometry.observer_km_s,
+            Frame::Comet => 0.0,
+            Frame::Shifted { velocity_km_s } => velocity_km_s,
+        };
+        let beta = velocity / LIGHT_KM_S;
+        ((1.0 + beta) / (1.0 - beta)).sqrt()
+    }
+
+    fn wavelengths_aa(&self) -> Vec<f64> {
+        let (low, high) = self.range_aa;
+        match self.resolution {
+            Resolution::ResolvingPower(r) => grid_aa(low, high, r, self.samples_per_fwhm),
+            Resolution::FwhmAa(fwhm) => {
+                let step = fwhm / self.samples_per_fwhm;
+                let count = ((high - low) / step) as usize;
+                (0..count).map(|i| low + step * i as f64).collect()
+            }
+        }
+    }
+
+    /// The spectrum after an exposure in s, with noise from a seed, or without noise but with its
+    /// errors.
+    ///
+    /// # Errors
+    /// As [`SceneSettings::bands`].
+    pub fn samples(
+        &self,
+        settings: &Settings,
+        exposure_s: f64,
+        seed: Option<u64>,
+    ) -> Result<Vec<SimulatedSample>> {
+        let bands = self.bands(settings)?;
+        let doppler = self.doppler(settings);
+        let mut rng = seed.map(Xoshiro256PlusPlus::seed_from_u64);
+        let shorter = (self.noise.exposure_s / exposure_s).sqrt();
+        let sample = |x: f64| {
+            let c = self.continuum;
+            let slope = 1.0 + c.slope_per_1000_aa * (x - c.at_aa) / 1000.0;
+            // A band keeps its flux from frame to frame, so its density falls as it is stretched.
+            let emission: f64 = bands
+                .iter()
+                .map(|b| b.flux_erg_s_cm2 * gaussian_per_aa(x / doppler, b.centre_aa, b.fwhm_aa))
+                .sum();
+            let clean = c.flux_erg_s_cm2_aa * slope + emission / doppler;
+            let sigma =
+                (self.noise.relative * clean).hypot(self.noise.floor_erg_s_cm2_aa) * shorter;
+            let noise = rng.as_mut().map_or(0.0, |r| StandardNormal.sample(r));
+            SimulatedSample {
+                wavelength_aa: x,
+                flux_erg_s_cm2_aa: clean + sigma * noise,
+                sigma_erg_s_cm2_aa: sigma,
+            }
+        };
+        Ok(self.wavelengths_aa().into_iter().map(sample).collect())
+    }
+
+    /// The spectrum without noise but with its errors after an exposure in s, as a reader gives it.
+    ///
+    /// # Errors
+    /// As [`SceneSettings::bands`]; a scene without samples, or with an error of zero.
+    pub fn clean_spectrum(&self, settings: &Settings, exposure_s: f64) -> Result<Spectrum> {
+        let samples = self.samples(settings, exposure_s, None)?;
+        let columns = Columns {
+            wavelength_aa: samples.iter().map(|s| s.wavelength_aa).collect(),
+            flux_erg_s_cm2_aa: samples.iter().map(|s| s.flux_erg_s_cm2_aa).collect(),
+            sigma_erg_s_cm2_aa: Some(samples.iter().map(|s| s.sigma_erg_s_cm2_aa).collect()),
+            flagged: Vec::new(),
+            lines: LineNumbers::default(),
+        };
+        Spectrum::from_columns("the simulated spectrum", columns, false)
+    }
+}
