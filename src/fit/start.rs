@@ -47,11 +47,13 @@ pub(super) fn solve_linear(model: &WindowModel, shapes: &[f64]) -> Result<Linear
     let rhs = DVector::from_fn(k, |a, _| dot(column(a), data) / lengths[a]);
     let solved = normal.cholesky().ok_or_else(singular)?.solve(&rhs);
     let parameters: Vec<f64> = (0..k).map(|c| solved[c] / lengths[c]).collect();
-    let mut chi2 = 0.0;
-    for i in 0..n {
-        let model_i: f64 = (0..k).map(|c| parameters[c] * columns[c * n + i]).sum();
-        chi2 += (data[i] - model_i).powi(2);
+    let mut residuals = data.to_vec();
+    for (c, value) in parameters.iter().enumerate() {
+        for (r, v) in residuals.iter_mut().zip(column(c)) {
+            *r -= value * v;
+        }
     }
+    let chi2 = dot(&residuals, &residuals);
     Ok(LinearSolution { parameters, chi2 })
 }
 
