@@ -90,6 +90,7 @@ fn whole(c: &mut Criterion, name: &str, lines: &[(f64, f64, f64)], tie: Option<&
             window_aa: (5000.0, 5099.5),
             centre: Freedom::Auto,
             width: Freedom::Auto,
+            structure: comagauge::fit::Structure::single(),
             tie: tie.map(str::to_owned),
         })
         .collect();

@@ -5,7 +5,7 @@
 use crate::coma::{ApertureKm, Lengths, ResidenceGrid, molecules_per_flux};
 use crate::fit::{BandFit, BandModel, FitSettings, SpectrumFit, fit_spectrum};
 use crate::frame::orbit::Sky;
-use crate::frame::{Aperture, Frame, Geometry, to_rest};
+use crate::frame::{Aperture, Frame, Geometry, to_rest_within};
 use crate::ground::{Caveat, Error, Measured, Result, Species};
 use crate::ratio::{
     BandShare, Basis, DrawSettings, Draws, FluxBlock, Lifetimes, Ratio, SpeciesPlan, draw, ratio,
@@ -292,7 +292,12 @@ fn fit_all(
             });
             continue;
         }
-        let rest = to_rest(spectrum, how.frame, &settings.geometry, &settings.aperture);
+        let windows = fit_settings.bands.iter().map(|b| b.window_aa);
+        let range = windows.fold((f64::INFINITY, 0.0), |(low, high): (f64, f64), w| {
+            (low.min(w.0), high.max(w.1))
+        });
+        let (geometry, aperture) = (&settings.geometry, &settings.aperture);
+        let rest = to_rest_within(spectrum, how.frame, geometry, aperture, range);
         let fit = fit_spectrum(&rest, &fit_settings)?;
         caveats.extend(fit.caveats.iter().cloned());
         fits.push((i, fit));

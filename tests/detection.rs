@@ -31,6 +31,7 @@ fn settings() -> FitSettings {
         window_aa: (CENTRE_AA - 1500.0, CENTRE_AA + 1500.0),
         centre: Freedom::Held,
         width: Freedom::Held,
+        structure: comagauge::fit::Structure::single(),
         tie: None,
     };
     let mut settings = FitSettings::new(vec![band]);

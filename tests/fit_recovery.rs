@@ -66,6 +66,7 @@ fn band(id: &str, centre: f64, half_window: f64) -> BandModel {
         window_aa: (centre - half_window, centre + half_window),
         centre: Freedom::Auto,
         width: Freedom::Auto,
+        structure: comagauge::fit::Structure::single(),
         tie: None,
     }
 }

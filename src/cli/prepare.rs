@@ -446,7 +446,7 @@ fn quicklook(read: &[Read], found: &[Found<'_>]) -> Result<String> {
     let x = first.spectrum.wavelength_aa();
     let micron = x[0] > 9000.0;
     let (unit, aa) = if micron { ("µm", 1e4) } else { ("Å", 1.0) };
-    let good = first.spectrum.good();
+    let (places, values) = thinned(&first.spectrum, aa);
     let figure = QuicklookFigure {
         title: first.spectrum.label().to_owned(),
         x_label: format!("Wavelength in vacuum ({unit})"),
@@ -456,14 +456,8 @@ fn quicklook(read: &[Read], found: &[Found<'_>]) -> Result<String> {
         } else {
             "erg s⁻¹ cm⁻² Å⁻¹".to_owned()
         },
-        x: x.iter().map(|v| v / aa).collect(),
-        y: first
-            .spectrum
-            .flux_erg_s_cm2_aa()
-            .iter()
-            .zip(good)
-            .map(|(v, g)| if *g { *v } else { f64::NAN })
-            .collect(),
+        x: places,
+        y: values,
         positions: found
             .iter()
             .filter(|f| f.spectrum == 0)
@@ -474,6 +468,35 @@ fn quicklook(read: &[Read], found: &[Found<'_>]) -> Result<String> {
             .collect(),
     };
     quicklook_svg(&figure, Width::Double)
+}
+
+/// Samples for the picture: all of a short spectrum, the extremes of equal stretches of a long one.
+fn thinned(spectrum: &Spectrum, aa: f64) -> (Vec<f64>, Vec<f64>) {
+    const STRETCHES: usize = 8000;
+    let (x, flux, good) = (
+        spectrum.wavelength_aa(),
+        spectrum.flux_erg_s_cm2_aa(),
+        spectrum.good(),
+    );
+    let value = |i: usize| if good[i] { flux[i] } else { f64::NAN };
+    let kept: Vec<usize> = if x.len() <= 2 * STRETCHES {
+        (0..x.len()).collect()
+    } else {
+        let long = x.len().div_ceil(STRETCHES);
+        (0..x.len())
+            .step_by(long)
+            .flat_map(|start| {
+                let stretch = || (start..(start + long).min(x.len())).filter(|i| good[*i]);
+                let least = stretch().min_by(|a, b| flux[*a].total_cmp(&flux[*b]));
+                let most = stretch().max_by(|a, b| flux[*a].total_cmp(&flux[*b]));
+                let mut both: Vec<usize> = least.into_iter().chain(most).collect();
+                both.sort_unstable();
+                both.dedup();
+                both
+            })
+            .collect()
+    };
+    kept.into_iter().map(|i| (x[i] / aa, value(i))).unzip()
 }
 
 fn table(found: &[Found<'_>]) -> String {

@@ -23,26 +23,25 @@ pub(super) struct Show {
 impl Show {
     pub(super) fn run(self) -> Result<()> {
         let (spectrum, understood) = self.reading.read(&self.file)?;
-        output::print(&if self.csv {
-            samples(&spectrum)
-        } else {
-            let mut out = format!("{}\n\n", self.file.display());
-            if let Some(u) = &understood {
-                out.push_str(&facts(u));
-            }
-            out.push_str(&content(&spectrum));
-            out
-        })
+        if self.csv {
+            return output::stream(|out| samples(&spectrum, out));
+        }
+        let mut text = format!("{}\n\n", self.file.display());
+        if let Some(u) = &understood {
+            text.push_str(&facts(u));
+        }
+        text.push_str(&content(&spectrum));
+        output::print(&text)
     }
 }
 
 /// Samples as CSV; surface brightness has columns of its own.
-fn samples(spectrum: &Spectrum) -> String {
-    let mut out = String::from(if spectrum.per_arcsec2() {
-        "wavelength_vacuum_aa,brightness_erg_s_cm2_aa_arcsec2,brightness_sigma_erg_s_cm2_aa_arcsec2,good\n"
+fn samples(spectrum: &Spectrum, out: &mut dyn std::io::Write) -> std::io::Result<()> {
+    out.write_all(if spectrum.per_arcsec2() {
+        b"wavelength_vacuum_aa,brightness_erg_s_cm2_aa_arcsec2,brightness_sigma_erg_s_cm2_aa_arcsec2,good\n"
     } else {
-        "wavelength_vacuum_aa,flux_erg_s_cm2_aa,sigma_erg_s_cm2_aa,good\n"
-    });
+        b"wavelength_vacuum_aa,flux_erg_s_cm2_aa,sigma_erg_s_cm2_aa,good\n"
+    })?;
     let number = |v: f64| {
         if v.is_finite() {
             format!("{v:e}")
@@ -59,10 +58,9 @@ fn samples(spectrum: &Spectrum) -> String {
             number(spectrum.flux_erg_s_cm2_aa()[i]),
             sigma.map_or_else(String::new, |s| number(s[i])),
             spectrum.good()[i]
-        )
-        .expect("invariant: writing to memory");
+        )?;
     }
-    out
+    Ok(())
 }
 
 fn line(out: &mut String, name: &str, value: &str) {
@@ -139,46 +137,25 @@ fn content(spectrum: &Spectrum) -> String {
         "vacuum Å",
         &format!("{:.3} to {:.3}", x[0], x[x.len() - 1]),
     );
-    let mut steps: Vec<f64> = x.windows(2).map(|w| w[1] - w[0]).collect();
-    steps.sort_by(f64::total_cmp);
-    line(
-        &mut out,
-        "step Å",
-        &format!(
-            "{:.4} to {:.4}, median {:.4}",
-            steps[0],
-            steps[steps.len() - 1],
-            steps[steps.len() / 2]
-        ),
-    );
+    let step = |i: usize| x[i + 1] - x[i];
+    if let Some([low, high, median]) = summary(x.len().saturating_sub(1), step, |_| true) {
+        let text = format!("{low:.4} to {high:.4}, median {median:.4}");
+        line(&mut out, "step Å", &text);
+    }
     let unit = if spectrum.per_arcsec2() {
         "erg/s/cm2/Å/arcsec2"
     } else {
         "erg/s/cm2/Å"
     };
-    let good = |values: &[f64]| -> Vec<f64> {
-        let mut kept: Vec<f64> = values
-            .iter()
-            .zip(spectrum.good())
-            .filter(|(_, g)| **g)
-            .map(|(v, _)| *v)
-            .collect();
-        kept.sort_by(f64::total_cmp);
-        kept
-    };
-    let flux = good(spectrum.flux_erg_s_cm2_aa());
-    if let (Some(low), Some(high)) = (flux.first(), flux.last()) {
-        let median = flux[flux.len() / 2];
-        line(
-            &mut out,
-            "flux density",
-            &format!("{low:.3e} to {high:.3e}, median {median:.3e} {unit}"),
-        );
+    let good = spectrum.good();
+    let flux = spectrum.flux_erg_s_cm2_aa();
+    if let Some([low, high, median]) = summary(x.len(), |i| flux[i], |i| good[i]) {
+        let text = format!("{low:.3e} to {high:.3e}, median {median:.3e} {unit}");
+        line(&mut out, "flux density", &text);
     }
     match spectrum.sigma_erg_s_cm2_aa() {
         Some(sigma) => {
-            let sigma = good(sigma);
-            if let Some(median) = sigma.get(sigma.len() / 2) {
+            if let Some([_, _, median]) = summary(x.len(), |i| sigma[i], |i| good[i]) {
                 line(&mut out, "error", &format!("median {median:.3e} {unit}"));
             }
         }
@@ -189,4 +166,28 @@ fn content(spectrum: &Spectrum) -> String {
         ),
     }
     out
+}
+
+/// Least, greatest and median of the wanted values; the median of long lists from evenly spaced ones,
+/// so that a large file needs no second copy.
+fn summary(
+    count: usize,
+    value: impl Fn(usize) -> f64,
+    wanted: impl Fn(usize) -> bool,
+) -> Option<[f64; 3]> {
+    const KEPT: usize = 100_000;
+    let every = count.div_ceil(KEPT).max(1);
+    let (mut low, mut high) = (f64::INFINITY, f64::NEG_INFINITY);
+    let mut kept = Vec::new();
+    for i in (0..count).filter(|i| wanted(*i)) {
+        let v = value(i);
+        low = low.min(v);
+        high = high.max(v);
+        if i % every == 0 {
+            kept.push(v);
+        }
+    }
+    kept.sort_by(f64::total_cmp);
+    let median = *kept.get(kept.len() / 2)?;
+    Some([low, high, median])
 }

@@ -12,6 +12,7 @@ mod settings;
 pub mod solver;
 mod spectrum_fit;
 mod start;
+mod structure;
 mod window;
 
 pub use detect::upper_limit;
@@ -19,3 +20,4 @@ pub use model::WindowModel;
 pub use profile::Sampling;
 pub use settings::{BandModel, FitSettings, Freedom, Resolution};
 pub use spectrum_fit::{BandFit, SampleFit, SpectrumFit, WindowFit, fit_spectrum};
+pub use structure::Structure;

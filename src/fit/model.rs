@@ -7,6 +7,7 @@
 use super::basis::to_unit_interval;
 use super::profile::{ProfileValue, REACH_SIGMA, Sampling, gaussian, gaussian_over_pixel};
 use super::solver::Residuals;
+use super::structure::Structure;
 use crate::ground::Result;
 use std::ops::Range;
 
@@ -15,8 +16,10 @@ use std::ops::Range;
 pub(super) struct Component {
     /// Expected centre, Å.
     pub centre_aa: f64,
-    /// Expected standard deviation σ₀, Å.
+    /// Expected standard deviation σ₀ of each line, Å.
     pub sigma_aa: f64,
+    /// The lines.
+    pub structure: Structure,
     /// Slot of the shift, or the value at which it is held.
     pub shift: Slot,
     /// Slot of the stretch, or the value at which it is held.
@@ -118,6 +121,7 @@ impl WindowModel {
             .map(|(b, (centre_aa, sigma_aa))| Component {
                 centre_aa: *centre_aa,
                 sigma_aa: *sigma_aa,
+                structure: Structure::single(),
                 shift: Slot::Fitted(slot(b)),
                 stretch: Slot::Fitted(slot(b) + 1),
             })
@@ -189,8 +193,11 @@ impl WindowModel {
         for band in 0..self.components.len() {
             let (centre, sigma) = self.shape_of(band, shapes);
             let at = self.flux_index(band) * n;
-            for i in self.reach(centre, sigma) {
-                columns[at + i] = self.profile(i, centre, sigma).value * self.weights[i];
+            for (ratio, share) in self.components[band].structure.lines() {
+                let line = centre * ratio;
+                for i in self.reach(line, sigma) {
+                    columns[at + i] += share * self.profile(i, line, sigma).value * self.weights[i];
+                }
             }
         }
     }
@@ -206,6 +213,10 @@ impl WindowModel {
         let component = &self.components[band];
         let (centre, sigma) = self.shape_of(band, &p[first_shape..]);
         let flux = p[self.flux_index(band)];
+        if !component.structure.is_single() {
+            self.add_lines(band, flux, (centre, sigma), residuals, columns);
+            return;
+        }
         let reach = self.reach(centre, sigma);
         let (linear, shape) = columns.split_at_mut(first_shape * n);
         let flux_column = &mut linear[self.flux_index(band) * n..][reach.clone()];
@@ -250,6 +261,38 @@ impl WindowModel {
             for ((out, v), x) in target.iter_mut().zip(&*flux_column).zip(x) {
                 let u = (x - centre) * inv;
                 *out += scale * v * (u * u - 1.0);
+            }
+        }
+    }
+}
+
+impl WindowModel {
+    /// As `add_band`, line by line.
+    fn add_lines(
+        &self,
+        band: usize,
+        flux: f64,
+        (centre, sigma): (f64, f64),
+        residuals: &mut [f64],
+        columns: &mut [f64],
+    ) {
+        let n = self.x_aa.len();
+        let component = &self.components[band];
+        let (linear, shape) = columns.split_at_mut(self.linear() * n);
+        let flux_column = &mut linear[self.flux_index(band) * n..][..n];
+        for (ratio, share) in component.structure.lines() {
+            let line = centre * ratio;
+            for i in self.reach(line, sigma) {
+                let v = self.profile(i, line, sigma);
+                let w = share * self.weights[i];
+                flux_column[i] += v.value * w;
+                residuals[i] -= flux * v.value * w;
+                if let Slot::Fitted(s) = component.shift {
+                    shape[s * n + i] += flux * v.by_centre * component.centre_aa * ratio * w;
+                }
+                if let Slot::Fitted(s) = component.stretch {
+                    shape[s * n + i] += flux * v.by_sigma * component.sigma_aa * w;
+                }
             }
         }
     }

@@ -1,6 +1,7 @@
 //! What to fit and how: the small settings struct of this floor.
 
 use super::Sampling;
+use super::structure::Structure;
 use crate::ground::{Error, Result};
 use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
@@ -51,6 +52,8 @@ pub struct BandModel {
     pub centre: Freedom,
     /// Freedom of the width.
     pub width: Freedom,
+    /// Lines the band consists of; a single line stands for a Gaussian.
+    pub structure: Structure,
     /// Bands with the same tie share one velocity and one width factor.
     pub tie: Option<String>,
 }
@@ -116,6 +119,10 @@ impl FitSettings {
     /// `None` when neither is known.
     pub fn expected_fwhm_aa(&self, band: &BandModel) -> Option<f64> {
         let instrument = self.resolution.map(|r| r.fwhm_aa(band.centre_aa));
+        if !band.structure.is_single() {
+            // The width of each line; the band's own is in its structure.
+            return instrument.or(band.fwhm_aa.filter(|w| *w > 0.0));
+        }
         match (band.fwhm_aa, instrument) {
             (Some(b), Some(i)) => Some(b.hypot(i)),
             (Some(b), None) if b > 0.0 => Some(b),

@@ -4,9 +4,10 @@ use super::basis::{chebyshev, to_unit_interval};
 use super::detect::upper_limit;
 use super::model::profile_at;
 use super::noise::scatter;
-use super::profile::{gaussian, sigma_from_fwhm};
+use super::profile::gaussian;
 use super::settings::{BandModel, FitSettings};
 use super::solver::Solver;
+use super::structure::Structure;
 use super::window::{WindowInput, WindowOutcome, fit_window};
 use crate::frame::RestSpectrum;
 use crate::ground::constants::FWHM_PER_SIGMA;
@@ -33,6 +34,10 @@ pub struct BandFit {
     pub fwhm_aa: f64,
     /// Its error; `None` when the width was held.
     pub fwhm_sigma_aa: Option<f64>,
+    /// Standard deviation of each line, Å; that of the band for a single Gaussian.
+    pub line_sigma_aa: f64,
+    /// The lines the band consists of.
+    pub structure: Structure,
     /// Band flux, erg s⁻¹ cm⁻²; may be negative.
     pub flux_erg_s_cm2: Measured,
     /// True at or above the detection threshold.
@@ -92,8 +97,15 @@ impl BandFit {
     /// The band's flux density at a rest vacuum wavelength in Å, erg s⁻¹ cm⁻² Å⁻¹, not averaged
     /// over a pixel.
     pub fn at(&self, x_aa: f64) -> f64 {
-        let sigma = sigma_from_fwhm(self.fwhm_aa);
-        self.flux_erg_s_cm2.value * gaussian(x_aa, self.centre_aa, sigma).value
+        let profile: f64 = self
+            .structure
+            .lines()
+            .iter()
+            .map(|(ratio, share)| {
+                share * gaussian(x_aa, self.centre_aa * ratio, self.line_sigma_aa).value
+            })
+            .sum();
+        self.flux_erg_s_cm2.value * profile
     }
 }
 
@@ -264,7 +276,9 @@ fn pick_samples(spectrum: &RestSpectrum, settings: &FitSettings, group: &Group) 
             let fwhm = settings
                 .expected_fwhm_aa(band)
                 .unwrap_or(0.15 * (band.window_aa.1 - band.window_aa.0));
-            (w - band.centre_aa).abs() <= CORE_FWHM * fwhm
+            let (low, high) = band.structure.extent();
+            w >= band.centre_aa * low - CORE_FWHM * fwhm
+                && w <= band.centre_aa * high + CORE_FWHM * fwhm
         })
     };
     let within = |ranges: &[(f64, f64)], w: f64| {
@@ -406,7 +420,14 @@ fn band_at(
     edges_aa: (f64, f64),
 ) -> f64 {
     let (centre, sigma) = (outcome.centre_aa[band], outcome.sigma_aa[band]);
-    outcome.flux[band] * profile_at(input.sampling, x_aa, edges_aa, centre, sigma)
+    let lines = input.bands[band].structure.lines();
+    let profile: f64 = lines
+        .iter()
+        .map(|(ratio, share)| {
+            share * profile_at(input.sampling, x_aa, edges_aa, centre * ratio, sigma)
+        })
+        .sum();
+    outcome.flux[band] * profile
 }
 
 fn band_fit(
@@ -422,13 +443,18 @@ fn band_fit(
         outcome.flux_covariance[(position, position)].sqrt() * scale,
     );
     let detected = flux.signal_to_noise() >= settings.detection_sigma;
+    let spread_aa = band.structure.spread() * outcome.centre_aa[position];
+    let total = outcome.sigma_aa[position].hypot(spread_aa);
     BandFit {
         id: band.id.clone(),
         window,
         centre_aa: outcome.centre_aa[position],
         centre_sigma_aa: outcome.centre_sigma_aa[position],
-        fwhm_aa: outcome.sigma_aa[position] * FWHM_PER_SIGMA,
-        fwhm_sigma_aa: outcome.sigma_sigma_aa[position].map(|s| s * FWHM_PER_SIGMA),
+        fwhm_aa: total * FWHM_PER_SIGMA,
+        fwhm_sigma_aa: outcome.sigma_sigma_aa[position]
+            .map(|s| s * (outcome.sigma_aa[position] / total) * FWHM_PER_SIGMA),
+        line_sigma_aa: outcome.sigma_aa[position],
+        structure: band.structure.clone(),
         flux_erg_s_cm2: flux,
         detected,
         flux_limit_erg_s_cm2: (!detected).then(|| upper_limit(flux)),
@@ -454,14 +480,16 @@ fn note_band(
         .partition_point(|x| *x < fit.centre_aa)
         .clamp(1, picked.x_aa.len() - 1);
     let pixel = picked.x_aa[nearest] - picked.x_aa[nearest - 1];
-    let pixels = fit.fwhm_aa / pixel;
+    let pixels = fit.line_sigma_aa * FWHM_PER_SIGMA / pixel;
     if pixels < 2.0 && settings.sampling == super::Sampling::Centre {
         caveats.push(Caveat::Undersampled {
             band: fit.id.clone(),
             fwhm_pixels: pixels,
         });
     }
-    if let (Some(resolution), Some(error)) = (settings.resolution, fit.fwhm_sigma_aa) {
+    if let (Some(resolution), Some(error)) = (settings.resolution, fit.fwhm_sigma_aa)
+        && fit.structure.is_single()
+    {
         let instrument = resolution.fwhm_aa(fit.centre_aa);
         if fit.fwhm_aa + 3.0 * error < 0.9 * instrument {
             caveats.push(Caveat::Other {

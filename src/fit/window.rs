@@ -301,6 +301,7 @@ fn lay_out(input: &WindowInput<'_>, wishes: &[Wish]) -> Layout {
         layout.components.push(Component {
             centre_aa: band.centre_aa,
             sigma_aa: sigma_from_fwhm(fwhm),
+            structure: band.structure.clone(),
             shift,
             stretch,
         });

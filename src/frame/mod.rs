@@ -11,4 +11,4 @@ mod rest;
 pub use aperture::{Aperture, km_per_arcsec};
 pub use ephemeris::Ephemeris;
 pub use geometry::Geometry;
-pub use rest::{Frame, RestSpectrum, to_rest};
+pub use rest::{Frame, RestSpectrum, to_rest, to_rest_within};

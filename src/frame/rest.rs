@@ -76,6 +76,18 @@ pub fn to_rest(
     geometry: &Geometry,
     aperture: &Aperture,
 ) -> RestSpectrum {
+    to_rest_within(spectrum, frame, geometry, aperture, (0.0, f64::INFINITY))
+}
+
+/// As [`to_rest`], but only the samples inside a range of rest wavelengths, Å, and two on either side;
+/// all of them when none lies inside. Keeps a large file from being copied whole.
+pub fn to_rest_within(
+    spectrum: &Spectrum,
+    frame: Frame,
+    geometry: &Geometry,
+    aperture: &Aperture,
+    range_aa: (f64, f64),
+) -> RestSpectrum {
     let velocity_km_s = match frame {
         Frame::Observer => geometry.observer_km_s,
         Frame::Comet => 0.0,
@@ -88,16 +100,25 @@ pub fn to_rest(
     } else {
         1.0
     };
-    let scale = |values: &[f64]| values.iter().map(|v| v * stretch * area).collect();
+    let x = spectrum.wavelength_aa();
+    let low = x.partition_point(|w| w / stretch < range_aa.0);
+    let high = x.partition_point(|w| w / stretch <= range_aa.1);
+    let kept = if low < high {
+        low.saturating_sub(2)..(high + 2).min(x.len())
+    } else {
+        0..x.len()
+    };
+    let scale = |values: &[f64]| {
+        values[kept.clone()]
+            .iter()
+            .map(|v| v * stretch * area)
+            .collect()
+    };
     RestSpectrum {
         label: spectrum.label().to_owned(),
-        wavelength_aa: spectrum
-            .wavelength_aa()
-            .iter()
-            .map(|w| w / stretch)
-            .collect(),
+        wavelength_aa: x[kept.clone()].iter().map(|w| w / stretch).collect(),
         flux_erg_s_cm2_aa: scale(spectrum.flux_erg_s_cm2_aa()),
         sigma_erg_s_cm2_aa: spectrum.sigma_erg_s_cm2_aa().map(scale),
-        good: spectrum.good().to_vec(),
+        good: spectrum.good()[kept.clone()].to_vec(),
     }
 }

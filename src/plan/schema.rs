@@ -302,6 +302,13 @@ pub struct BandPlan {
     /// Where the g given here comes from.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub g_source: Option<String>,
+    /// "gaussian" (default) or "envelope": the rotational lines of the band at `temperature_k`, each
+    /// with the instrument's width.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub shape: Option<String>,
+    /// Rotational temperature of an envelope, K (default 70 K over the heliocentric distance in au).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub temperature_k: Option<f64>,
     /// "auto" (default), "free" or "held".
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub centre_is: Option<Freedom>,

@@ -4,7 +4,7 @@ use super::Checker;
 use super::convert::{range_aa, width_aa};
 use crate::analysis::BandSettings;
 use crate::coma::{line_centre_opacity_cm2, strongest_line_fraction};
-use crate::fit::{BandModel, Freedom};
+use crate::fit::{BandModel, Freedom, Structure};
 use crate::frame::Geometry;
 use crate::ground::{Error, Result, Species, did_you_mean};
 use crate::plan::schema::BandPlan;
@@ -60,7 +60,15 @@ impl Checker<'_> {
         if custom.is_none() && listed.is_none() {
             return Err(self.unknown_band(id));
         }
-        let model = self.band_model(id, own, listed, &keys)?;
+        let envelope = self.envelope(id, own, geometry, &keys)?;
+        let mut model = self.band_model(id, own, listed, &keys)?;
+        let enveloped = envelope.is_some();
+        if let Some((centre_aa, structure)) = envelope {
+            model.centre_aa = centre_aa;
+            model.structure = structure;
+            model.fwhm_aa = Some(0.0);
+            model.width = own.width_is.unwrap_or(Freedom::Held);
+        }
         let species = own
             .species
             .as_deref()
@@ -80,7 +88,9 @@ impl Checker<'_> {
         }
         Ok(BandSettings {
             opacity_cm2: listed.and_then(|b| self.opacity_cm2(b, geometry)),
-            structured_fwhm_aa: listed.filter(|b| b.structured).map(|b| b.fwhm_aa),
+            structured_fwhm_aa: listed
+                .filter(|b| b.structured && !enveloped)
+                .map(|b| b.fwhm_aa),
             spectrum: own.spectrum.map(|i| i - 1),
             model,
             species,
@@ -197,6 +207,7 @@ impl Checker<'_> {
             window_aa,
             centre: own.centre_is.unwrap_or(Freedom::Auto),
             width: own.width_is.unwrap_or(Freedom::Auto),
+            structure: Structure::single(),
             tie: own.tie.clone(),
         })
     }

@@ -8,6 +8,7 @@ mod convert;
 mod efficiency;
 mod geometry;
 mod ratios;
+mod shape;
 mod simulate;
 mod spectra;
 
