@@ -13,6 +13,6 @@ pub use document::{PlanFile, read_plan};
 pub use resolve::to_toml;
 pub use schema::{
     AperturePlan, BandPlan, ColumnPlan, ColumnsPlan, ComaPlan, CometPlan, ContinuumPlan, DatePlan,
-    DrawsPlan, LifetimePlan, MeasurePlan, OrbitPlan, Plan, SimulateContinuumPlan,
+    DrawsPlan, LifetimePlan, LinesPlan, MeasurePlan, OrbitPlan, Plan, SimulateContinuumPlan,
     SimulateNoisePlan, SimulatePlan, SitePlan, SpectrumPlan, StatePlan, TablesPlan,
 };

@@ -20,6 +20,9 @@ pub struct Plan {
     /// Custom bands, or changes to bands of the line lists.
     #[serde(default, skip_serializing_if = "Vec::is_empty")]
     pub band: Vec<BandPlan>,
+    /// All lines of an atom in given windows, with efficiencies computed for this comet.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub lines: Vec<LinesPlan>,
     /// The continuum.
     #[serde(default)]
     pub continuum: ContinuumPlan,
@@ -321,6 +324,29 @@ pub struct BandPlan {
     /// Number of the spectrum to measure it in (default: the first that covers it).
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub spectrum: Option<usize>,
+}
+
+/// All lines of an atom in some windows: one column per window, relative fluxes from the statistical
+/// equilibrium.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
+#[serde(deny_unknown_fields)]
+pub struct LinesPlan {
+    /// The atom or ion, for example "Ni I".
+    pub species: String,
+    /// Ranges to fit; the lines of one range share velocity and column.
+    pub windows: Vec<[f64; 2]>,
+    /// Lines below this fraction of the strongest one's power are left out (default 0.01).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub threshold: Option<f64>,
+    /// Lines to leave out, by wavelength within 0.05 Å.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub without: Vec<f64>,
+    /// Unit of the wavelengths here (default: that of the first spectrum).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub unit: Option<String>,
+    /// Their medium (default: that of the first spectrum).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub medium: Option<String>,
 }
 
 /// The continuum.

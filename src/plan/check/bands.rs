@@ -13,7 +13,7 @@ use crate::tables::Band;
 impl Checker<'_> {
     pub(super) fn bands(&mut self, geometry: &Geometry) -> Result<Vec<BandSettings>> {
         let wanted = &self.plan.measure.bands;
-        if wanted.is_empty() {
+        if wanted.is_empty() && self.plan.lines.is_empty() {
             return Err(self.file.point(
                 Error::plan("bands is empty: nothing to measure").remedy(
                     "name bands of the line lists (`comagauge bands`) or of [[band]] tables",
@@ -48,7 +48,12 @@ impl Checker<'_> {
                 ));
             }
         }
-        wanted.iter().map(|id| self.band(id, geometry)).collect()
+        let mut out = wanted
+            .iter()
+            .map(|id| self.band(id, geometry))
+            .collect::<Result<Vec<_>>>()?;
+        out.extend(self.line_groups(geometry)?);
+        Ok(out)
     }
 
     fn band(&mut self, id: &str, geometry: &Geometry) -> Result<BandSettings> {

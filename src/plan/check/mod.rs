@@ -7,6 +7,7 @@ mod continuum;
 mod convert;
 mod efficiency;
 mod geometry;
+mod lines;
 mod ratios;
 mod shape;
 mod simulate;
