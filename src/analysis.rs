@@ -8,7 +8,8 @@ use crate::frame::orbit::Sky;
 use crate::frame::{Aperture, Frame, Geometry, to_rest_within};
 use crate::ground::{Caveat, Error, Measured, Result, Species};
 use crate::ratio::{
-    BandShare, Basis, DrawSettings, Draws, FluxBlock, Lifetimes, Ratio, SpeciesPlan, draw, ratio,
+    BandShare, Basis, DrawSettings, Draws, FluxBlock, Lifetimes, Ratio, SpeciesPlan, disagreement,
+    draw, ratio,
 };
 use crate::spectrum::Spectrum;
 use crate::standing::{Entry, Estimated, Standing, VoteRule, one_vote_each, place};
@@ -195,6 +196,7 @@ pub fn analyse(spectra: &[Spectrum], settings: &Settings) -> Result<Analysis> {
     let fits = fit_all(spectra, settings, &home, &mut caveats)?;
     let aperture_cm2 = settings.aperture.area_cm2(settings.geometry.observer_au);
     let bands = band_results(settings, &fits, &home, aperture_cm2, &mut caveats);
+    note_disagreement(settings, &bands, &mut caveats);
     let plans = species_plans(settings, &fits, &home);
     let blocks = flux_blocks(settings, &fits);
     if plans.is_empty() {
@@ -364,6 +366,34 @@ fn band_results(
         });
     }
     out
+}
+
+/// Bands of one species whose columns differ by more than fit and g allow.
+fn note_disagreement(settings: &Settings, bands: &[BandResult], caveats: &mut Vec<Caveat>) {
+    for species in settings.species.iter().map(|s| &s.species) {
+        let own: Vec<(&BandResult, (f64, f64))> = bands
+            .iter()
+            .filter(|b| b.species.as_ref() == Some(species))
+            .filter_map(|b| {
+                let (column, g) = (b.column_cm2?, b.efficiency.as_ref()?);
+                let sigma = column.sigma.hypot(g.relative_sigma * column.value);
+                Some((b, (column.value, sigma)))
+            })
+            .collect();
+        let columns: Vec<(f64, f64)> = own.iter().map(|(_, c)| *c).collect();
+        if let Some(found) = disagreement(&columns) {
+            caveats.push(Caveat::Other {
+                code: "bands-disagree",
+                text: format!(
+                    "{species}: its {} bands disagree (reduced chi-square {:.1}); farthest is {} at {:+.1} σ from the others: a blend or a wrong g; leave it out or doubt the error bar",
+                    own.len(),
+                    found.reduced_chi2,
+                    own[found.worst].0.fit.id,
+                    found.pull
+                ),
+            });
+        }
+    }
 }
 
 fn note_band(
