@@ -1,12 +1,7 @@
 //! How far the coma lets its own fluorescent light through.
 
-use crate::ground::constants::{ATOMIC_MASS_G, BOLTZMANN_ERG_K, HC_OVER_K_CM_K, LIGHT_KM_S};
+use crate::ground::constants::{HC_OVER_K_CM_K, LIGHT_KM_S};
 use std::f64::consts::PI;
-
-/// Doppler width b = √(2kT/m) in km s⁻¹ of a molecule of mass `mass_u` at temperature T.
-pub fn doppler_b_km_s(temperature_k: f64, mass_u: f64) -> f64 {
-    (2.0 * BOLTZMANN_ERG_K * temperature_k / (mass_u * ATOMIC_MASS_G)).sqrt() * 1.0e-5
-}
 
 /// Line-centre opacity per column density, cm²: τ = N S/(√π b) with b in wavenumbers.
 ///
@@ -46,7 +41,5 @@ mod tests {
         let warm = strongest_line_fraction(0.39, 50.0, false);
         let even = strongest_line_fraction(0.39, 50.0, true);
         assert!((even / warm - 2.0).abs() < 0.05, "{even} {warm}");
-        // Water at 50 K: √(2kT/m) = 0.215 km/s.
-        assert!((doppler_b_km_s(50.0, 18.011) - 0.2149).abs() < 2e-4);
     }
 }

@@ -8,7 +8,7 @@ mod document;
 mod resolve;
 mod schema;
 
-pub use check::{Checked, check, default_bands_in, instant, orbit, site};
+pub use check::{Checked, check, instant, orbit, site};
 pub use document::{PlanFile, read_plan};
 pub use resolve::to_toml;
 pub use schema::{

@@ -23,7 +23,7 @@ use crate::plan::resolve::defaults;
 use crate::plan::schema::Plan;
 use crate::ratio::DrawSettings;
 use crate::spectrum::{Layout, Understood};
-use crate::tables::{Band, Tables};
+use crate::tables::Tables;
 use convert::{aperture, number_in};
 use geometry::date_text;
 use std::collections::BTreeMap;
@@ -85,15 +85,6 @@ impl Checked {
         }
         Ok(())
     }
-}
-
-/// Identifiers of the line lists' bands whose centre lies between two vacuum wavelengths, Å.
-pub fn default_bands_in(tables: &Tables, low_aa: f64, high_aa: f64) -> Vec<&Band> {
-    tables
-        .bands()
-        .iter()
-        .filter(|b| low_aa < b.centre_aa && b.centre_aa < high_aa)
-        .collect()
 }
 
 struct Checker<'a> {
