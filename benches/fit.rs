@@ -84,19 +84,13 @@ fn whole(c: &mut Criterion, name: &str, lines: &[(f64, f64, f64)], tie: Option<&
         .iter()
         .enumerate()
         .map(|(i, (centre, _, _))| BandModel {
-            id: i.to_string(),
-            centre_aa: centre + 0.5,
-            fwhm_aa: Some(0.0),
-            window_aa: (5000.0, 5099.5),
-            centre: Freedom::Auto,
-            width: Freedom::Auto,
-            structure: comagauge::fit::Structure::single(),
             tie: tie.map(str::to_owned),
+            ..BandModel::gaussian(&i.to_string(), centre + 0.5, Some(0.0), (5000.0, 5099.5))
         })
         .collect();
     let mut settings = FitSettings::new(bands);
     settings.resolution = Some(Resolution::FwhmAa(4.0));
-    settings.continuum_order = Some(1);
+    settings.continuum.order = Some(1);
     c.bench_function(name, |b| {
         b.iter(|| black_box(fit_spectrum(black_box(&rest), &settings).expect("a fit")));
     });

@@ -25,18 +25,18 @@ struct Outcome {
 
 fn settings() -> FitSettings {
     let band = BandModel {
-        id: "line".to_owned(),
-        centre_aa: CENTRE_AA,
-        fwhm_aa: Some(0.0),
-        window_aa: (CENTRE_AA - 1500.0, CENTRE_AA + 1500.0),
         centre: Freedom::Held,
         width: Freedom::Held,
-        structure: comagauge::fit::Structure::single(),
-        tie: None,
+        ..BandModel::gaussian(
+            "line",
+            CENTRE_AA,
+            Some(0.0),
+            (CENTRE_AA - 1500.0, CENTRE_AA + 1500.0),
+        )
     };
     let mut settings = FitSettings::new(vec![band]);
     settings.resolution = Some(Resolution::FwhmAa(FWHM_AA));
-    settings.continuum_order = Some(1);
+    settings.continuum.order = Some(1);
     settings
 }
 

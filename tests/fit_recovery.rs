@@ -59,16 +59,8 @@ fn gaussian(x: f64, (centre, fwhm, flux): Line) -> f64 {
 }
 
 fn band(id: &str, centre: f64, half_window: f64) -> BandModel {
-    BandModel {
-        id: id.to_owned(),
-        centre_aa: centre,
-        fwhm_aa: Some(0.0),
-        window_aa: (centre - half_window, centre + half_window),
-        centre: Freedom::Auto,
-        width: Freedom::Auto,
-        structure: comagauge::fit::Structure::single(),
-        tie: None,
-    }
+    let window = (centre - half_window, centre + half_window);
+    BandModel::gaussian(id, centre, Some(0.0), window)
 }
 
 fn grid(from: f64, to: f64, n: usize) -> Vec<f64> {

@@ -166,16 +166,70 @@ impl SolarSpectrum {
         sum / weights
     }
 
-    /// Relative standard deviation of the irradiance at one wavelength: absolute level and finite
-    /// resolution, the latter from what one more smoothing to the resolution would change. It grows
-    /// in the cores and on the flanks of Fraunhofer lines, hence near zero heliocentric velocity.
-    pub fn relative_sigma(&self, vacuum_aa: f64) -> f64 {
+    /// Resolution of the reference at a vacuum wavelength: full width at half maximum, Å.
+    pub fn fwhm_aa(&self, vacuum_aa: f64) -> f64 {
+        self.piece(vacuum_aa).fwhm_nm * AA_PER_NM
+    }
+
+    fn piece(&self, vacuum_aa: f64) -> &Piece {
         let found = self
             .pieces
             .iter()
             .find(|p| vacuum_aa < p.to_nm * AA_PER_NM)
             .or(self.pieces.last());
-        let piece = found.expect("invariant: construction refuses an empty spectrum");
+        found.expect("invariant: construction refuses an empty spectrum")
+    }
+
+    /// Irradiance convolved with a Gaussian of this full width at half maximum, Å, cut at
+    /// `reach_sigma` standard deviations: cell by cell of the reference, exact for its straight pieces
+    /// in cells wider than a quarter of σ, by the mid-cell weight in narrower ones (relative error of
+    /// the weights below 3e-3 in one cell, of opposite sign on either side of the flank).
+    pub fn convolved_erg_s_cm2_aa(&self, vacuum_aa: f64, fwhm_aa: f64, reach_sigma: f64) -> f64 {
+        if fwhm_aa <= 0.0 {
+            return self.irradiance_erg_s_cm2_aa(vacuum_aa);
+        }
+        let sigma = fwhm_aa / FWHM_PER_SIGMA;
+        let (low, high) = (
+            vacuum_aa - reach_sigma * sigma,
+            vacuum_aa + reach_sigma * sigma,
+        );
+        let w = &self.wavelength_aa;
+        let mut after = w.partition_point(|x| *x <= low);
+        let (mut left, mut sum, mut weights) = (low, 0.0, 0.0);
+        while left < high {
+            let right = w.get(after).copied().unwrap_or(f64::INFINITY).min(high);
+            let (value, weight) = self.cell(after, (left, right), vacuum_aa, sigma);
+            sum += value;
+            weights += weight;
+            left = right;
+            after += 1;
+        }
+        sum / weights
+    }
+
+    /// ∫ f G and ∫ G over a cell, without the normal density's 1/√2π.
+    fn cell(&self, after: usize, (a, b): (f64, f64), centre: f64, sigma: f64) -> (f64, f64) {
+        let density = |u: f64| (-0.5 * u * u).exp();
+        if b - a < 0.25 * sigma {
+            let middle = 0.5 * (a + b);
+            let weight = density((middle - centre) / sigma) * (b - a) / sigma;
+            return (weight * self.between(after, middle), weight);
+        }
+        let (ua, ub) = ((a - centre) / sigma, (b - centre) / sigma);
+        let root = std::f64::consts::FRAC_1_SQRT_2;
+        let area = (std::f64::consts::PI / 2.0).sqrt();
+        let zeroth = area * (libm::erf(ub * root) - libm::erf(ua * root));
+        let first = density(ua) - density(ub);
+        let slope = (self.between(after, b) - self.between(after, a)) / (b - a);
+        let at_centre = self.between(after, a) + slope * (centre - a);
+        (at_centre * zeroth + slope * sigma * first, zeroth)
+    }
+
+    /// Relative standard deviation of the irradiance at one wavelength: absolute level and finite
+    /// resolution, the latter from what one more smoothing to the resolution would change. It grows
+    /// in the cores and on the flanks of Fraunhofer lines, hence near zero heliocentric velocity.
+    pub fn relative_sigma(&self, vacuum_aa: f64) -> f64 {
+        let piece = self.piece(vacuum_aa);
         let plain = self.irradiance_erg_s_cm2_aa(vacuum_aa);
         let smooth = self.averaged_erg_s_cm2_aa(vacuum_aa, piece.fwhm_nm * AA_PER_NM);
         let change = if plain > 0.0 {
@@ -213,6 +267,19 @@ mod tests {
         let (_, end_aa) = sun.range_aa();
         let ratio = sun.irradiance_erg_s_cm2_aa(2.0 * end_aa) / sun.irradiance_erg_s_cm2_aa(end_aa);
         assert!((ratio * 16.0 - 1.0).abs() < 1e-12);
+        // Wide cells by the closed form, narrow ones by the middle: both agree with a fine sum.
+        for (at, fwhm) in [(3933.0, 6.0), (3933.0, 0.9), (48_000.0, 300.0)] {
+            let sigma = fwhm / FWHM_PER_SIGMA;
+            let (mut top, mut bottom) = (0.0, 0.0);
+            for i in -20_000..=20_000 {
+                let u = 5.0 * f64::from(i) / 20_000.0;
+                let weight = (-0.5 * u * u).exp();
+                top += weight * sun.irradiance_erg_s_cm2_aa(at + u * sigma);
+                bottom += weight;
+            }
+            let found = sun.convolved_erg_s_cm2_aa(at, fwhm, 5.0);
+            assert!((found / (top / bottom) - 1.0).abs() < 2e-4, "{at} {fwhm}");
+        }
         // A straight piece of spectrum is not changed by averaging.
         let straight_aa = 25_107.0;
         let plain = sun.irradiance_erg_s_cm2_aa(straight_aa);

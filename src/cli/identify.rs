@@ -87,7 +87,7 @@ impl Identify {
         for task in &job.tasks {
             let settings = PeakSettings {
                 sigma: self.sigma,
-                resolution: task.resolution,
+                resolution: task.resolution.clone(),
             };
             let found = find_peaks(&task.spectrum, &settings)?;
             let named = identify(&found.peaks, &catalogue);

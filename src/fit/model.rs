@@ -1,29 +1,67 @@
 //! One window's model: Chebyshev continuum plus bands, in the form the solver wants.
 //!
-//! Parameters, in this order: continuum coefficients, one flux per band, then the shape slots. A
-//! shape slot is either a shift β (centre = λ₀(1 + β)) or a stretch s (σ = s σ₀); bands that share
-//! velocity or width share the slot, and a band whose shape is held has none.
+//! Parameters, in this order: continuum coefficients, one flux per component, then the shape slots.
+//! A shape slot is a shift β (centre = λ₀(1 + β)), a stretch s (σ = s σ₀), a temperature in K or a
+//! wing term; bands that share velocity or width share the slot, and a held parameter has none. A
+//! thermal continuum is a component too, the last one; its "flux" is the flux density in the middle
+//! of the window.
 
 use super::basis::to_unit_interval;
-use super::profile::{ProfileValue, REACH_SIGMA, Sampling, gaussian, gaussian_over_pixel};
+use super::form::{Rotor, Template};
+use super::profile::{ProfileValue, REACH_SIGMA, Sampling, gaussian, gaussian_over_pixel, winged};
 use super::solver::Residuals;
 use super::structure::Structure;
+use super::thermal::planck_over_reference;
 use crate::ground::Result;
 use std::ops::Range;
+use std::sync::Arc;
 
-/// One band inside a window.
+/// One band, or the thermal continuum, inside a window.
 #[derive(Clone, Debug)]
 pub(super) struct Component {
     /// Expected centre, Å.
     pub centre_aa: f64,
     /// Expected standard deviation σ₀ of each line, Å.
     pub sigma_aa: f64,
-    /// The lines.
-    pub structure: Structure,
+    /// What it looks like.
+    pub shape: Shape,
     /// Slot of the shift, or the value at which it is held.
     pub shift: Slot,
     /// Slot of the stretch, or the value at which it is held.
     pub stretch: Slot,
+}
+
+/// What a component looks like.
+#[derive(Clone, Debug)]
+pub(super) enum Shape {
+    /// Fixed lines.
+    Lines(Structure),
+    /// One line with wing terms of third and fourth order.
+    Winged([Slot; 2]),
+    /// Lines at a temperature in K.
+    Warm(Arc<Rotor>, Slot),
+    /// A tabulated profile.
+    Template(Arc<Template>),
+    /// A Planck function over its value at the component's centre, at a temperature in K.
+    Planck(Slot),
+}
+
+/// The samples of a window in the unit of the fit.
+#[derive(Clone, Copy)]
+pub(super) struct Samples<'a> {
+    pub x_aa: &'a [f64],
+    pub edges_aa: &'a [(f64, f64)],
+    pub data: &'a [f64],
+    pub sigma: &'a [f64],
+}
+
+/// The linear part of a window's continuum.
+#[derive(Clone, Copy)]
+pub(super) struct Basis<'a> {
+    pub window_aa: (f64, f64),
+    pub order: usize,
+    /// What the polynomial multiplies, sample by sample; nothing means 1.
+    pub carrier: Option<&'a [f64]>,
 }
 
 /// A shape parameter: fitted in a slot or held at a value.
@@ -36,7 +74,7 @@ pub(super) enum Slot {
 }
 
 impl Slot {
-    fn value(self, shapes: &[f64]) -> f64 {
+    pub(super) fn value(self, shapes: &[f64]) -> f64 {
         match self {
             Self::Fitted(i) => shapes[i],
             Self::Held(v) => v,
@@ -59,21 +97,30 @@ pub struct WindowModel {
 }
 
 impl WindowModel {
-    /// Builds the model over used samples: wavelengths, pixel edges, data and errors in the unit
-    /// of the fit; `order` is the Chebyshev order over `window_aa`.
-    pub(super) fn new(
-        x_aa: &[f64],
-        edges_aa: &[(f64, f64)],
-        data: &[f64],
-        sigma: &[f64],
-        window_aa: (f64, f64),
-        order: usize,
-        sampling: Sampling,
-    ) -> Self {
+    /// Builds the model over used samples.
+    pub(super) fn new(samples: Samples<'_>, continuum: Basis<'_>, sampling: Sampling) -> Self {
+        let Samples {
+            x_aa,
+            edges_aa,
+            data,
+            sigma,
+        } = samples;
+        let Basis {
+            window_aa,
+            order,
+            carrier,
+        } = continuum;
         let n = x_aa.len();
         let weights: Vec<f64> = sigma.iter().map(|s| 1.0 / s).collect();
         let mut basis = vec![0.0; n * (order + 1)];
-        basis[..n].copy_from_slice(&weights);
+        match carrier {
+            None => basis[..n].copy_from_slice(&weights),
+            Some(carrier) => {
+                for ((b, w), c) in basis.iter_mut().zip(&weights).zip(carrier) {
+                    *b = w * c;
+                }
+            }
+        }
         for (i, x) in x_aa.iter().enumerate() {
             // Chebyshev recurrence, on weighted values because it is linear.
             let t = to_unit_interval(*x, window_aa);
@@ -112,8 +159,18 @@ impl WindowModel {
         let n = x_aa.len();
         let half = 0.5 * (x_aa[n - 1] - x_aa[0]) / (n - 1) as f64;
         let edges: Vec<(f64, f64)> = x_aa.iter().map(|x| (x - half, x + half)).collect();
-        let window = (x_aa[0], x_aa[n - 1]);
-        let mut model = Self::new(x_aa, &edges, data, sigma, window, order, Sampling::Centre);
+        let samples = Samples {
+            x_aa,
+            edges_aa: &edges,
+            data,
+            sigma,
+        };
+        let continuum = Basis {
+            window_aa: (x_aa[0], x_aa[n - 1]),
+            order,
+            carrier: None,
+        };
+        let mut model = Self::new(samples, continuum, Sampling::Centre);
         let slot = |b: usize| if tied { 0 } else { 2 * b };
         let components = lines_aa
             .iter()
@@ -121,7 +178,7 @@ impl WindowModel {
             .map(|(b, (centre_aa, sigma_aa))| Component {
                 centre_aa: *centre_aa,
                 sigma_aa: *sigma_aa,
-                structure: Structure::single(),
+                shape: Shape::Lines(Structure::single()),
                 shift: Slot::Fitted(slot(b)),
                 stretch: Slot::Fitted(slot(b) + 1),
             })
@@ -191,14 +248,10 @@ impl WindowModel {
         columns.extend_from_slice(&self.basis);
         columns.resize(n * self.linear(), 0.0);
         for band in 0..self.components.len() {
-            let (centre, sigma) = self.shape_of(band, shapes);
-            let at = self.flux_index(band) * n;
-            for (ratio, share) in self.components[band].structure.lines() {
-                let line = centre * ratio;
-                for i in self.reach(line, sigma) {
-                    columns[at + i] += share * self.profile(i, line, sigma).value * self.weights[i];
-                }
-            }
+            let column = &mut columns[self.flux_index(band) * n..][..n];
+            self.visit(band, shapes, |i, value, _| {
+                column[i] += value * self.weights[i];
+            });
         }
     }
 
@@ -213,28 +266,14 @@ impl WindowModel {
         let component = &self.components[band];
         let (centre, sigma) = self.shape_of(band, &p[first_shape..]);
         let flux = p[self.flux_index(band)];
-        if !component.structure.is_single() {
-            self.add_lines(band, flux, (centre, sigma), residuals, columns);
+        let plain = matches!(&component.shape, Shape::Lines(s) if s.is_single());
+        if !plain || self.sampling == Sampling::Pixel {
+            self.add_general(band, p, residuals, columns);
             return;
         }
         let reach = self.reach(centre, sigma);
         let (linear, shape) = columns.split_at_mut(first_shape * n);
         let flux_column = &mut linear[self.flux_index(band) * n..][reach.clone()];
-        if self.sampling == Sampling::Pixel {
-            for (out, i) in flux_column.iter_mut().zip(reach) {
-                let v = self.profile(i, centre, sigma);
-                let w = self.weights[i];
-                *out = v.value * w;
-                residuals[i] -= flux * v.value * w;
-                if let Slot::Fitted(s) = component.shift {
-                    shape[s * n + i] += flux * v.by_centre * component.centre_aa * w;
-                }
-                if let Slot::Fitted(s) = component.stretch {
-                    shape[s * n + i] += flux * v.by_sigma * component.sigma_aa * w;
-                }
-            }
-            return;
-        }
         // Plain slices and one thing per loop, so that all but the exponential is vectorised.
         let x = &self.x_aa[reach.clone()];
         for ((out, x), w) in flux_column
@@ -266,35 +305,93 @@ impl WindowModel {
     }
 }
 
+impl Component {
+    /// Slots of shift, stretch and what else the shape has.
+    pub(super) fn slots(&self) -> [Slot; 4] {
+        let none = Slot::Held(0.0);
+        let more = match &self.shape {
+            Shape::Winged(slots) => *slots,
+            Shape::Warm(_, slot) | Shape::Planck(slot) => [*slot, none],
+            Shape::Lines(_) | Shape::Template(_) => [none, none],
+        };
+        [self.shift, self.stretch, more[0], more[1]]
+    }
+}
+
 impl WindowModel {
-    /// As `add_band`, line by line.
-    fn add_lines(
-        &self,
-        band: usize,
-        flux: f64,
-        (centre, sigma): (f64, f64),
-        residuals: &mut [f64],
-        columns: &mut [f64],
-    ) {
-        let n = self.x_aa.len();
+    /// Calls `f(sample, value, derivatives by the four slots)` wherever a component of unit flux does
+    /// not vanish; a sample may come several times, and counts each time.
+    fn visit(&self, band: usize, shapes: &[f64], mut f: impl FnMut(usize, f64, [f64; 4])) {
         let component = &self.components[band];
-        let (linear, shape) = columns.split_at_mut(self.linear() * n);
-        let flux_column = &mut linear[self.flux_index(band) * n..][..n];
-        for (ratio, share) in component.structure.lines() {
-            let line = centre * ratio;
-            for i in self.reach(line, sigma) {
-                let v = self.profile(i, line, sigma);
-                let w = share * self.weights[i];
-                flux_column[i] += v.value * w;
-                residuals[i] -= flux * v.value * w;
-                if let Slot::Fitted(s) = component.shift {
-                    shape[s * n + i] += flux * v.by_centre * component.centre_aa * ratio * w;
+        let (centre, sigma) = self.shape_of(band, shapes);
+        let (by_shift, by_stretch) = (component.centre_aa, component.sigma_aa);
+        match &component.shape {
+            Shape::Lines(structure) => {
+                for (ratio, share) in structure.lines() {
+                    let line = centre * ratio;
+                    for i in self.reach(line, sigma) {
+                        let v = self.profile(i, line, sigma);
+                        let shift = share * v.by_centre * by_shift * ratio;
+                        let stretch = share * v.by_sigma * by_stretch;
+                        f(i, share * v.value, [shift, stretch, 0.0, 0.0]);
+                    }
                 }
-                if let Slot::Fitted(s) = component.stretch {
-                    shape[s * n + i] += flux * v.by_sigma * component.sigma_aa * w;
+            }
+            Shape::Winged(slots) => {
+                let wings = [slots[0].value(shapes), slots[1].value(shapes)];
+                for i in self.reach(centre, sigma) {
+                    let pixel = (self.sampling == Sampling::Pixel).then(|| self.edges_aa[i]);
+                    let (v, by_wings) = winged(self.x_aa[i], pixel, centre, sigma, wings);
+                    let (shift, stretch) = (v.by_centre * by_shift, v.by_sigma * by_stretch);
+                    f(i, v.value, [shift, stretch, by_wings[0], by_wings[1]]);
+                }
+            }
+            Shape::Warm(rotor, slot) => {
+                for (ratio, share, by_k) in rotor.lines(slot.value(shapes)) {
+                    let line = centre * ratio;
+                    for i in self.reach(line, sigma) {
+                        let v = self.profile(i, line, sigma);
+                        let shift = share * v.by_centre * by_shift * ratio;
+                        let stretch = share * v.by_sigma * by_stretch;
+                        f(i, share * v.value, [shift, stretch, by_k * v.value, 0.0]);
+                    }
+                }
+            }
+            Shape::Template(template) => {
+                for (i, x) in self.x_aa.iter().enumerate() {
+                    let ratio = x / centre;
+                    let (value, slope) = template.at(ratio);
+                    let by_centre = -(slope * ratio + value) / (centre * centre);
+                    f(i, value / centre, [by_centre * by_shift, 0.0, 0.0, 0.0]);
+                }
+            }
+            Shape::Planck(slot) => {
+                let temperature_k = slot.value(shapes);
+                for (i, x) in self.x_aa.iter().enumerate() {
+                    let (value, by_k) = planck_over_reference(*x, centre, temperature_k);
+                    f(i, value, [0.0, 0.0, by_k, 0.0]);
                 }
             }
         }
+    }
+
+    /// As `add_band`, for any shape.
+    fn add_general(&self, band: usize, p: &[f64], residuals: &mut [f64], columns: &mut [f64]) {
+        let n = self.x_aa.len();
+        let flux = p[self.flux_index(band)];
+        let slots = self.components[band].slots();
+        let (linear, shape) = columns.split_at_mut(self.linear() * n);
+        let flux_column = &mut linear[self.flux_index(band) * n..][..n];
+        self.visit(band, &p[self.linear()..], |i, value, by| {
+            let w = self.weights[i];
+            flux_column[i] += value * w;
+            residuals[i] -= flux * value * w;
+            for (slot, by) in slots.iter().zip(by) {
+                if let Slot::Fitted(s) = slot {
+                    shape[s * n + i] += flux * by * w;
+                }
+            }
+        });
     }
 }
 
@@ -322,22 +419,5 @@ impl Residuals for WindowModel {
         for band in 0..self.components.len() {
             self.add_band(band, p, residuals, columns);
         }
-    }
-}
-
-/// Profile of a band at any wavelengths, for reporting (Å⁻¹).
-pub(super) fn profile_at(
-    sampling: Sampling,
-    x_aa: f64,
-    edges_aa: (f64, f64),
-    centre_aa: f64,
-    sigma_aa: f64,
-) -> f64 {
-    if (x_aa - centre_aa).abs() > REACH_SIGMA * sigma_aa + (edges_aa.1 - edges_aa.0) {
-        return 0.0;
-    }
-    match sampling {
-        Sampling::Centre => gaussian(x_aa, centre_aa, sigma_aa).value,
-        Sampling::Pixel => gaussian_over_pixel(edges_aa.0, edges_aa.1, centre_aa, sigma_aa).value,
     }
 }

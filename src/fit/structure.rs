@@ -39,6 +39,13 @@ impl Structure {
         Ok((centre_aa, Self { lines }))
     }
 
+    /// From (wavelength over the centre, share) pairs as they are.
+    pub(super) fn about_centre(lines: impl Iterator<Item = (f64, f64)>) -> Self {
+        Self {
+            lines: lines.collect(),
+        }
+    }
+
     /// (wavelength over the centre, share) of every line.
     pub fn lines(&self) -> &[(f64, f64)] {
         &self.lines

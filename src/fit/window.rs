@@ -1,8 +1,9 @@
 //! The fit of one window: which shapes to fit, from where to start, and how sure the result is.
 
-use super::model::{Component, Slot, WindowModel};
+use super::form::{Form, Rotor};
+use super::model::{Basis, Component, Samples, Shape, Slot, WindowModel};
 use super::profile::{Sampling, sigma_from_fwhm};
-use super::settings::{BandModel, Freedom};
+use super::settings::{BandModel, Freedom, Thermal};
 use super::solver::{Solver, Stop, covariance};
 use super::start::{ShapeGrid, scan, simplex, solve_linear};
 use crate::ground::{Error, Result};
@@ -14,6 +15,10 @@ const KEEP_FREE_SIGMA: f64 = 5.0;
 /// Fall of χ² for two more shape parameters that frees a weak band's shape all the same: the
 /// chance of a larger fall by noise alone is exp(−9), even after scanning the grid below 1 %.
 const FREE_BY_CHI2: f64 = 18.0;
+/// Largest wing term: beyond it the profile turns negative.
+const MOST_WING: f64 = 0.6;
+/// Temperatures a thermal continuum may take, K.
+const THERMAL_RANGE_K: (f64, f64) = (30.0, 3000.0);
 /// Below this signal-to-noise of the held fit an automatic shape is never fitted.
 const NEVER_FREE_SIGMA: f64 = 3.5;
 
@@ -25,11 +30,37 @@ pub(super) struct WindowInput<'a> {
     pub sigma: Vec<f64>,
     pub window_aa: (f64, f64),
     pub order: usize,
+    /// What the continuum's polynomial multiplies, sample by sample.
+    pub carrier: Option<Vec<f64>>,
+    /// Wavelengths and carrier of all samples inside the window.
+    pub inside_aa: Vec<f64>,
+    pub carrier_inside: Option<Vec<f64>>,
+    pub thermal: Option<Thermal>,
     pub sampling: Sampling,
     pub bands: Vec<&'a BandModel>,
     pub expected_fwhm_aa: Vec<Option<f64>>,
     pub instrument_fwhm_aa: Vec<Option<f64>>,
     pub free_shape_sigma: f64,
+    /// Limits of the fluxes in the unit of the fit.
+    pub flux_limits: Vec<Option<(f64, f64)>>,
+}
+
+impl WindowInput<'_> {
+    /// The model without components over the samples of the fit.
+    pub(super) fn model(&self) -> WindowModel {
+        let samples = Samples {
+            x_aa: &self.x_aa,
+            edges_aa: &self.edges_aa,
+            data: &self.data,
+            sigma: &self.sigma,
+        };
+        let continuum = Basis {
+            window_aa: self.window_aa,
+            order: self.order,
+            carrier: self.carrier.as_deref(),
+        };
+        WindowModel::new(samples, continuum, self.sampling)
+    }
 }
 
 /// What became of a band's shape.
@@ -43,22 +74,45 @@ pub(super) struct ShapeState {
 /// The fitted window, still in the unit of the fit.
 pub(super) struct WindowOutcome {
     pub continuum: Vec<f64>,
+    /// Thermal flux density in the middle of the window, and the temperature, each with its error.
+    pub thermal: Option<ThermalOutcome>,
     pub flux: Vec<f64>,
     pub centre_aa: Vec<f64>,
     pub centre_sigma_aa: Vec<Option<f64>>,
     pub sigma_aa: Vec<f64>,
     pub sigma_sigma_aa: Vec<Option<f64>>,
     pub shape: Vec<ShapeState>,
+    /// What else a band's shape has: temperature in K, or the two wing terms, with errors.
+    pub extra: Vec<Vec<(f64, Option<f64>)>>,
     pub chi2: f64,
     pub dof: usize,
     /// Covariance of the fluxes.
     pub flux_covariance: DMatrix<f64>,
+    /// All parameters as the solver has them, their bounds, and which of them have an error.
+    pub parameters: Vec<f64>,
+    #[allow(dead_code)]
+    pub bounds: Vec<(f64, f64)>,
+    pub free: Vec<usize>,
+    /// Covariance of the parameters in `free`.
+    pub covariance: DMatrix<f64>,
+    pub components: Vec<Component>,
+    pub shapes: usize,
+}
+
+/// The thermal part of a window's continuum.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct ThermalOutcome {
+    pub reference_aa: f64,
+    pub flux_density: (f64, f64),
+    pub temperature_k: (f64, Option<f64>),
 }
 
 #[derive(Clone, Copy, Debug, PartialEq)]
 struct Wish {
     centre: bool,
     width: bool,
+    /// Temperature or wings.
+    extra: bool,
 }
 
 struct Layout {
@@ -73,15 +127,7 @@ struct Layout {
 /// # Errors
 /// Too few samples, or bands that cannot be told apart.
 pub(super) fn fit_window(input: &WindowInput<'_>, solver: &mut Solver) -> Result<WindowOutcome> {
-    let mut model = WindowModel::new(
-        &input.x_aa,
-        &input.edges_aa,
-        &input.data,
-        &input.sigma,
-        input.window_aa,
-        input.order,
-        input.sampling,
-    );
+    let mut model = input.model();
     let held: Vec<Wish> = input.bands.iter().map(|b| must_be_free(b)).collect();
     let mut notes = vec![None; input.bands.len()];
     let base = attempt(input, &mut model, &held, solver)?;
@@ -109,7 +155,12 @@ fn must_be_free(band: &BandModel) -> Wish {
     Wish {
         centre: band.centre == Freedom::Free,
         width: band.width == Freedom::Free,
+        extra: band.extra == Freedom::Free && has_extra(band),
     }
+}
+
+fn has_extra(band: &BandModel) -> bool {
+    band.wings || matches!(band.form, Form::Warm(_))
 }
 
 fn choose_free(
@@ -123,7 +174,8 @@ fn choose_free(
     for (b, band) in input.bands.iter().enumerate() {
         let wish = Wish {
             centre: band.centre != Freedom::Held,
-            width: band.width != Freedom::Held,
+            width: band.width != Freedom::Held && !matches!(band.form, Form::Template(_)),
+            extra: band.extra != Freedom::Held && has_extra(band),
         };
         if wish == held[b] {
             continue;
@@ -161,9 +213,7 @@ fn hold_the_doubtful(
         let snr = outcome.flux[b] / outcome.flux_covariance[(b, b)].sqrt();
         if let Some(note) = &outcome.shape[b].note {
             next[b] = held[b];
-            notes[b] = Some(format!(
-                "{note}; centre and width were held at the expected values"
-            ));
+            notes[b] = Some(format!("{note}; its shape was held at the expected values"));
         } else if snr < KEEP_FREE_SIGMA && input.expected_fwhm_aa[b].is_some() {
             next[b] = held[b];
         }
@@ -200,6 +250,11 @@ fn attempt(
     let (shapes, _) = scan(model, &layout.start, &layout.grid);
     let linear = solve_linear(model, &shapes)?;
     let mut bounds = vec![(f64::NEG_INFINITY, f64::INFINITY); model.linear()];
+    for (b, limits) in input.flux_limits.iter().enumerate() {
+        if let Some(limits) = limits {
+            bounds[model.flux_index(b)] = *limits;
+        }
+    }
     bounds.extend_from_slice(&layout.bounds);
     let start: Vec<f64> = linear.parameters.into_iter().chain(shapes).collect();
     let mut minimum = solver.minimise(model, &start, &bounds, Stop::default())?;
@@ -214,7 +269,7 @@ fn attempt(
             None => {}
         }
     }
-    assemble(input, model, &minimum, solver.columns())
+    assemble(input, model, &minimum, solver.columns(), bounds)
 }
 
 fn rescue(
@@ -262,6 +317,7 @@ fn lay_out(input: &WindowInput<'_>, wishes: &[Wish]) -> Layout {
                     Wish {
                         centre: w.centre || wish.centre,
                         width: w.width || wish.width,
+                        extra: w.extra,
                     }
                 } else {
                     w
@@ -298,10 +354,11 @@ fn lay_out(input: &WindowInput<'_>, wishes: &[Wish]) -> Layout {
         };
         let shift = slot(false, wish.centre, 0.0);
         let stretch = slot(true, wish.width, 1.0);
+        let shape = shape_of(band, wish.extra, &mut layout, &mut pair);
         layout.components.push(Component {
             centre_aa: band.centre_aa,
             sigma_aa: sigma_from_fwhm(fwhm),
-            structure: band.structure.clone(),
+            shape,
             shift,
             stretch,
         });
@@ -309,7 +366,75 @@ fn lay_out(input: &WindowInput<'_>, wishes: &[Wish]) -> Layout {
             layout.grid.pairs.push(pair);
         }
     }
+    if let Some(thermal) = input.thermal {
+        add_thermal(input, thermal, &mut layout);
+    }
     layout
+}
+
+/// The band's shape, with slots of its own for temperature or wings.
+fn shape_of(band: &BandModel, wanted: bool, layout: &mut Layout, pair: &mut Vec<usize>) -> Shape {
+    let mut slot = |start: f64, bounds: (f64, f64), candidates: Vec<f64>, scanned: bool| {
+        if !wanted {
+            return Slot::Held(start);
+        }
+        layout.start.push(start);
+        layout.bounds.push(bounds);
+        layout.grid.candidates.push(candidates);
+        if scanned {
+            pair.push(layout.start.len() - 1);
+        }
+        Slot::Fitted(layout.start.len() - 1)
+    };
+    match &band.form {
+        Form::Warm(rotor) => {
+            let bounds = band.limits.temperature_k.unwrap_or(Rotor::RANGE_K);
+            let grid = log_grid(bounds, 7);
+            Shape::Warm(rotor.clone(), slot(rotor.start_k, bounds, grid, true))
+        }
+        Form::Template(template) => Shape::Template(template.clone()),
+        _ if band.wings => {
+            let mut term = || slot(0.0, (-MOST_WING, MOST_WING), vec![0.0], false);
+            Shape::Winged([term(), term()])
+        }
+        _ => Shape::Lines(band.structure.clone()),
+    }
+}
+
+fn log_grid((low, high): (f64, f64), count: i32) -> Vec<f64> {
+    (0..count)
+        .map(|i| low * (high / low).powf((f64::from(i) + 0.5) / f64::from(count)))
+        .collect()
+}
+
+/// The thermal continuum as the last component.
+fn add_thermal(input: &WindowInput<'_>, thermal: Thermal, layout: &mut Layout) {
+    let slot = if thermal.free {
+        layout.start.push(thermal.temperature_k);
+        layout.bounds.push(THERMAL_RANGE_K);
+        let around = [0.5, 0.7, 0.85, 1.0, 1.2, 1.5, 2.0];
+        layout
+            .grid
+            .candidates
+            .push(around.iter().map(|f| f * thermal.temperature_k).collect());
+        layout.grid.pairs.push(vec![layout.start.len() - 1]);
+        Slot::Fitted(layout.start.len() - 1)
+    } else {
+        Slot::Held(thermal.temperature_k)
+    };
+    layout.components.push(Component {
+        centre_aa: 0.5 * (input.window_aa.0 + input.window_aa.1),
+        sigma_aa: 1.0,
+        shape: Shape::Planck(slot),
+        shift: Slot::Held(0.0),
+        stretch: Slot::Held(1.0),
+    });
+}
+
+fn inner_grid((low, high): (f64, f64), count: i32) -> Vec<f64> {
+    (0..count)
+        .map(|i| low + (high - low) * (f64::from(i) + 0.5) / f64::from(count))
+        .collect()
 }
 
 fn pixel_aa(input: &WindowInput<'_>) -> f64 {
@@ -328,6 +453,10 @@ fn guess_fwhm_aa(input: &WindowInput<'_>) -> f64 {
 fn shift_range(input: &WindowInput<'_>, b: usize, fwhm: f64) -> ((f64, f64), Vec<f64>) {
     let band = input.bands[b];
     let centre = band.centre_aa;
+    if let Some((low, high)) = band.limits.centre_aa {
+        let (low, high) = (low / centre - 1.0, high / centre - 1.0);
+        return ((low, high), inner_grid((low, high), 7));
+    }
     let known = input.expected_fwhm_aa[b].is_some();
     let reach_aa = if band.centre == Freedom::Auto && known {
         fwhm.max(3.0 * pixel_aa(input))
@@ -356,6 +485,10 @@ fn shift_range(input: &WindowInput<'_>, b: usize, fwhm: f64) -> ((f64, f64), Vec
 
 /// Bounds and candidates of the stretch s.
 fn stretch_range(input: &WindowInput<'_>, b: usize, fwhm: f64) -> ((f64, f64), Vec<f64>) {
+    if let Some((low, high)) = input.bands[b].limits.fwhm_aa {
+        let bounds = (low / fwhm, high / fwhm);
+        return (bounds, inner_grid(bounds, 5));
+    }
     let window = input.window_aa.1 - input.window_aa.0;
     let widest = (0.5 * window / fwhm).max(1.2);
     // An intrinsic width is an opinion, an instrument's width nearly a fact: but neither may force
@@ -379,62 +512,144 @@ fn assemble(
     model: &WindowModel,
     minimum: &super::solver::Minimum,
     columns: &[f64],
+    bounds: Vec<(f64, f64)>,
 ) -> Result<WindowOutcome> {
     let n = input.x_aa.len();
     let p = &minimum.parameters;
-    let free: Vec<usize> = (0..p.len()).filter(|i| !minimum.on_bound[*i]).collect();
-    let cov = covariance(columns, n, &free)?;
-    let position = |parameter: usize| free.iter().position(|f| *f == parameter);
-    let bands = input.bands.len();
     let first_shape = model.linear();
-    let shapes = &p[first_shape..];
-    let flux_position: Vec<usize> = (0..bands)
-        .map(|b| position(model.flux_index(b)).expect("invariant: fluxes have no bounds"))
+    // A flux on a limit of the user's keeps the error it would have without.
+    let free: Vec<usize> = (0..p.len())
+        .filter(|i| !minimum.on_bound[*i] || *i < first_shape)
         .collect();
-    let slot_sigma = |slot: Slot, scale: f64| match slot {
-        Slot::Held(_) => None,
-        Slot::Fitted(i) => {
-            position(first_shape + i).map(|at| scale * cov[(at, at)].max(0.0).sqrt())
-        }
-    };
+    let bands = input.bands.len();
+    let shapes = &p[first_shape..];
+    let (centre_aa, sigma_aa) = (0..bands).map(|b| model.shape_of(b, shapes)).unzip();
     let mut out = WindowOutcome {
-        continuum: p[..model.linear() - bands].to_vec(),
+        continuum: p[..model.flux_index(0)].to_vec(),
+        thermal: None,
         flux: (0..bands).map(|b| p[model.flux_index(b)]).collect(),
-        centre_aa: Vec::new(),
-        centre_sigma_aa: Vec::new(),
-        sigma_aa: Vec::new(),
-        sigma_sigma_aa: Vec::new(),
-        shape: Vec::new(),
+        centre_aa,
+        centre_sigma_aa: vec![None; bands],
+        sigma_aa,
+        sigma_sigma_aa: vec![None; bands],
+        shape: model.components[..bands]
+            .iter()
+            .map(|c| shape_state(c, &minimum.on_bound[first_shape..]))
+            .collect(),
+        extra: vec![Vec::new(); bands],
         chi2: minimum.chi2,
         dof: n - free.len(),
-        flux_covariance: DMatrix::from_fn(bands, bands, |a, b| {
-            cov[(flux_position[a], flux_position[b])]
-        }),
+        flux_covariance: DMatrix::zeros(bands, bands),
+        covariance: covariance(columns, n, &free)?,
+        parameters: p.clone(),
+        bounds,
+        free,
+        components: model.components.clone(),
+        shapes: shapes.len(),
     };
-    for (b, component) in model.components.iter().enumerate() {
-        let (centre, sigma) = model.shape_of(b, shapes);
-        out.centre_aa.push(centre);
-        out.sigma_aa.push(sigma);
-        out.centre_sigma_aa
-            .push(slot_sigma(component.shift, component.centre_aa));
-        out.sigma_sigma_aa
-            .push(slot_sigma(component.stretch, component.sigma_aa));
-        out.shape
-            .push(shape_state(component, &minimum.on_bound[first_shape..]));
-    }
+    out.read_errors();
     Ok(out)
+}
+
+impl WindowOutcome {
+    /// Position of a parameter among the free ones.
+    pub(super) fn position(&self, parameter: usize) -> Option<usize> {
+        self.free.iter().position(|f| *f == parameter)
+    }
+
+    /// Index of a component's flux among the parameters.
+    pub(super) fn flux_index(&self, component: usize) -> usize {
+        self.continuum.len() + component
+    }
+
+    fn sigma_of(&self, parameter: usize) -> Option<f64> {
+        let at = self.position(parameter)?;
+        Some(self.covariance[(at, at)].max(0.0).sqrt())
+    }
+
+    /// Errors of fluxes and shapes from the covariance.
+    pub(super) fn read_errors(&mut self) {
+        let bands = self.flux.len();
+        let first_shape = self.parameters.len() - self.shapes;
+        let shapes = self.parameters[first_shape..].to_vec();
+        let at: Vec<usize> = (0..bands)
+            .map(|b| {
+                self.position(self.flux_index(b))
+                    .expect("invariant: fluxes are always free")
+            })
+            .collect();
+        self.flux_covariance =
+            DMatrix::from_fn(bands, bands, |a, b| self.covariance[(at[a], at[b])]);
+        let slot_sigma = |slot: Slot, scale: f64| match slot {
+            Slot::Held(_) => None,
+            Slot::Fitted(i) => self.sigma_of(first_shape + i).map(|s| scale * s),
+        };
+        let components = &self.components[..bands];
+        let centre = components
+            .iter()
+            .map(|c| slot_sigma(c.shift, c.centre_aa))
+            .collect();
+        let width = components
+            .iter()
+            .map(|c| slot_sigma(c.stretch, c.sigma_aa))
+            .collect();
+        let extra = components
+            .iter()
+            .map(|c| {
+                let slots: &[Slot] = match &c.shape {
+                    Shape::Winged(slots) => slots,
+                    Shape::Warm(_, slot) => std::slice::from_ref(slot),
+                    _ => &[],
+                };
+                let read = |s: &Slot| (s.value(&shapes), slot_sigma(*s, 1.0));
+                slots.iter().map(read).collect()
+            })
+            .collect();
+        let thermal = self.components.get(bands).and_then(|c| {
+            let Shape::Planck(slot) = c.shape else {
+                return None;
+            };
+            let index = self.flux_index(bands);
+            let sigma = self.sigma_of(index).unwrap_or(f64::NAN);
+            Some(ThermalOutcome {
+                reference_aa: c.centre_aa,
+                flux_density: (self.parameters[index], sigma),
+                temperature_k: (slot.value(&shapes), slot_sigma(slot, 1.0)),
+            })
+        });
+        self.centre_sigma_aa = centre;
+        self.sigma_sigma_aa = width;
+        self.extra = extra;
+        self.thermal = thermal;
+    }
 }
 
 fn shape_state(component: &Component, on_bound: &[bool]) -> ShapeState {
     let stuck = |slot: Slot| matches!(slot, Slot::Fitted(i) if on_bound[i]);
-    let note = match (stuck(component.shift), stuck(component.stretch)) {
-        (false, false) => None,
-        (true, false) => Some("the fitted centre ran to the end of its range".to_owned()),
-        (false, true) => Some("the fitted width ran to the end of its range".to_owned()),
-        (true, true) => {
-            Some("the fitted centre and width ran to the end of their range".to_owned())
-        }
+    let slots = component.slots();
+    let extra = match component.shape {
+        Shape::Warm(..) => "temperature",
+        _ => "wings",
     };
+    let names = ["centre", "width", extra, extra];
+    let mut stuck: Vec<&str> = slots
+        .iter()
+        .zip(names)
+        .filter(|(s, _)| stuck(**s))
+        .map(|(_, name)| name)
+        .collect();
+    stuck.dedup();
+    let note = (!stuck.is_empty()).then(|| {
+        let plural = if stuck.len() > 1 {
+            "their ranges"
+        } else {
+            "its range"
+        };
+        format!(
+            "the fitted {} ran to the end of {plural}",
+            stuck.join(" and ")
+        )
+    });
     ShapeState {
         centre_fitted: matches!(component.shift, Slot::Fitted(_)),
         width_fitted: matches!(component.stretch, Slot::Fitted(_)),

@@ -178,12 +178,21 @@ impl SceneSettings {
 
     fn wavelengths_aa(&self) -> Vec<f64> {
         let (low, high) = self.range_aa;
-        match self.resolution {
-            Resolution::ResolvingPower(r) => grid_aa(low, high, r, self.samples_per_fwhm),
+        match &self.resolution {
+            Resolution::ResolvingPower(r) => grid_aa(low, high, *r, self.samples_per_fwhm),
             Resolution::FwhmAa(fwhm) => {
                 let step = fwhm / self.samples_per_fwhm;
                 let count = ((high - low) / step) as usize;
                 (0..count).map(|i| low + step * i as f64).collect()
+            }
+            Resolution::Table(_) => {
+                let mut out = vec![low];
+                let mut x = low;
+                while x < high {
+                    x += self.resolution.fwhm_aa(x) / self.samples_per_fwhm;
+                    out.push(x);
+                }
+                out
             }
         }
     }

@@ -17,6 +17,12 @@ impl Measured {
         Self { value, sigma }
     }
 
+    /// Both times a factor that is not negative.
+    #[must_use]
+    pub fn scaled(&self, factor: f64) -> Self {
+        Self::new(self.value * factor, self.sigma * factor)
+    }
+
     /// Value over sigma.
     pub fn signal_to_noise(&self) -> f64 {
         self.value / self.sigma

@@ -24,7 +24,7 @@ const NARROW: f64 = 0.3;
 impl Excess<'_> {
     /// Signal-to-noise of the height of a line of instrumental width centred on each sample, all else
     /// being continuum: Σ w f/σ² / √(Σ w²/σ²), w the Gaussian profile.
-    pub fn significance(&self, resolution: Resolution) -> Vec<f64> {
+    pub fn significance(&self, resolution: &Resolution) -> Vec<f64> {
         let x = self.wavelength_aa;
         let mut from = 0;
         (0..x.len())

@@ -9,7 +9,7 @@ use crate::frame::RestSpectrum;
 use crate::ground::{Caveat, Error, Result};
 
 /// How peaks are found.
-#[derive(Clone, Copy, Debug, PartialEq)]
+#[derive(Clone, Debug, PartialEq)]
 pub struct PeakSettings {
     /// Least signal-to-noise of a peak's height.
     pub sigma: f64,
@@ -66,8 +66,8 @@ pub fn find_peaks(spectrum: &RestSpectrum, settings: &PeakSettings) -> Result<Fo
     check(spectrum, settings)?;
     let mut caveats = Vec::new();
     let first = excess(spectrum, WINDOW_SAMPLES)?;
-    let resolution = match settings.resolution {
-        Some(r) => r,
+    let resolution = match &settings.resolution {
+        Some(r) => r.clone(),
         None => estimated(&first.0, spectrum, &mut caveats),
     };
     let x = spectrum.wavelength_aa();
@@ -77,11 +77,11 @@ pub fn find_peaks(spectrum: &RestSpectrum, settings: &PeakSettings) -> Result<Fo
     let window = WINDOW_SAMPLES.max(samples as usize);
     let (excess, continuum) = excess(spectrum, window)?;
     judge_errors(spectrum, &excess, window, &mut caveats);
-    let significance = excess.significance(resolution);
-    let tops = tops(&excess, &significance, resolution, settings.sigma);
-    caveats.extend(false_peaks(x, resolution, settings.sigma));
+    let significance = excess.significance(&resolution);
+    let tops = tops(&excess, &significance, &resolution, settings.sigma);
+    caveats.extend(false_peaks(x, &resolution, settings.sigma));
     Ok(Found {
-        peaks: fit_all(&excess, &tops, &significance, resolution),
+        peaks: fit_all(&excess, &tops, &significance, &resolution),
         continuum,
         resolution,
         caveats,
@@ -187,7 +187,7 @@ fn judge_errors(
 }
 
 /// A caveat when noise alone is expected to give a peak.
-fn false_peaks(x: &[f64], resolution: Resolution, sigma: f64) -> Option<Caveat> {
+fn false_peaks(x: &[f64], resolution: &Resolution, sigma: f64) -> Option<Caveat> {
     let middle = x[x.len() / 2];
     let trials = (x[x.len() - 1] - x[0]) / resolution.fwhm_aa(middle);
     let expected = trials * 0.5 * libm::erfc(sigma / std::f64::consts::SQRT_2);
@@ -200,7 +200,7 @@ fn false_peaks(x: &[f64], resolution: Resolution, sigma: f64) -> Option<Caveat> 
 }
 
 /// Samples at which the significance is largest within half a width and above the threshold.
-fn tops(excess: &Excess, significance: &[f64], resolution: Resolution, least: f64) -> Vec<usize> {
+fn tops(excess: &Excess, significance: &[f64], resolution: &Resolution, least: f64) -> Vec<usize> {
     let x = excess.wavelength_aa;
     let highest = |i: usize| {
         let reach = 0.5 * resolution.fwhm_aa(x[i]);
@@ -238,7 +238,7 @@ fn fit_all(
     excess: &Excess,
     tops: &[usize],
     significance: &[f64],
-    resolution: Resolution,
+    resolution: &Resolution,
 ) -> Vec<Peak> {
     let x = excess.wavelength_aa;
     let mut shapes: Vec<Shape> = tops
@@ -278,7 +278,7 @@ fn refit(
     top: usize,
     shapes: &mut [Shape],
     k: usize,
-    resolution: Resolution,
+    resolution: &Resolution,
     solver: &mut Solver,
 ) {
     let x = excess.wavelength_aa;

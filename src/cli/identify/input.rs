@@ -78,7 +78,7 @@ fn planned(given: &Identify) -> Result<Job> {
         .zip(&settings.spectra)
         .map(|(spectrum, how)| Task {
             spectrum: to_rest(spectrum, how.frame, &settings.geometry, &settings.aperture),
-            resolution: how.fit.resolution,
+            resolution: how.fit.resolution.clone(),
         })
         .collect();
     let geometry = settings.geometry;

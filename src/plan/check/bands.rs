@@ -4,7 +4,7 @@ use super::Checker;
 use super::convert::{range_aa, width_aa};
 use crate::analysis::BandSettings;
 use crate::coma::{line_centre_opacity_cm2, strongest_line_fraction};
-use crate::fit::{BandModel, Freedom, Structure};
+use crate::fit::{BandModel, Form, Freedom, Limits, Structure};
 use crate::frame::Geometry;
 use crate::ground::{Error, Result, Species, did_you_mean};
 use crate::plan::schema::BandPlan;
@@ -214,6 +214,10 @@ impl Checker<'_> {
             width: own.width_is.unwrap_or(Freedom::Auto),
             structure: Structure::single(),
             tie: own.tie.clone(),
+            form: Form::Lines,
+            wings: false,
+            extra: Freedom::Auto,
+            limits: Limits::default(),
         })
     }
 }

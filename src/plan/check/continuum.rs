@@ -9,7 +9,7 @@ impl Checker<'_> {
     pub(super) fn continuum(&self) -> Result<FitSettings> {
         let c = &self.plan.continuum;
         let mut fit = FitSettings::new(Vec::new());
-        fit.continuum_order = c.order;
+        fit.continuum.order = c.order;
         if c.order.is_some_and(|o| o > 12) {
             return Err(self.file.point(
                 Error::plan(format!(

@@ -6,7 +6,7 @@ use super::convert::range_aa;
 use crate::analysis::{BandSettings, EfficiencyAtComet};
 use crate::atomic;
 use crate::coma::equilibrium::{Conditions, Equilibrium, LineG, SolarField};
-use crate::fit::{BandModel, Freedom, Structure};
+use crate::fit::{BandModel, Form, Freedom, Limits, Structure};
 use crate::frame::Geometry;
 use crate::ground::constants::HC_ERG_AA;
 use crate::ground::{Error, Result, Species};
@@ -145,6 +145,10 @@ fn group(species: &Species, window_aa: (f64, f64), lines: &[&LineG]) -> Result<B
             width: Freedom::Held,
             structure,
             tie: None,
+            form: Form::Lines,
+            wings: false,
+            extra: Freedom::Auto,
+            limits: Limits::default(),
         },
         species: Some(species.clone()),
         efficiency: Some(EfficiencyAtComet {

@@ -16,7 +16,7 @@ impl Checker<'_> {
         let point = |e: Error, key: &str| self.file.point(e, &["simulate", key]);
         let (unit, medium) = self.axis_or(None, None, &["simulate"])?;
         let range = range_aa(plan.range, unit, medium).map_err(|e| point(e, "range"))?;
-        let resolution = settings.spectra[0].fit.resolution.ok_or_else(|| {
+        let resolution = settings.spectra[0].fit.resolution.clone().ok_or_else(|| {
             point(
                 Error::plan("a simulation needs the resolution of the first spectrum")
                     .remedy("add resolving_power or instrument_fwhm to its [[spectrum]] table"),
