@@ -3,6 +3,7 @@
 //! Imports floors 0–6. Reads no file and prints nothing; what it returns is all that the edges see.
 
 use crate::coma::{ApertureKm, Lengths, ResidenceGrid, molecules_per_flux};
+use crate::dust::{DustResult, dust};
 use crate::fit::{BandFit, BandModel, FitSettings, SpectrumFit, fit_spectrum};
 use crate::frame::orbit::Sky;
 use crate::frame::{Aperture, Frame, Geometry, to_rest_within};
@@ -41,6 +42,8 @@ pub struct Settings {
     pub draws: DrawSettings,
     /// Signal-to-noise of a detection.
     pub detection_sigma: f64,
+    /// Wavelengths at which A(θ)fρ is wanted, rest vacuum Å; none means the middle of each window.
+    pub afrho_at_aa: Vec<f64>,
     /// Doubts found while checking.
     pub caveats: Vec<Caveat>,
     /// References of the numbers in use: (key, text).
@@ -173,6 +176,8 @@ pub struct Analysis {
     pub fits: Vec<(usize, SpectrumFit)>,
     /// Bands in the order asked for.
     pub bands: Vec<BandResult>,
+    /// The dust, where the continuum tells of it.
+    pub dust: Vec<DustResult>,
     /// Species in the order of their first band.
     pub species: Vec<SpeciesResult>,
     /// Ratios in the order asked for.
@@ -197,6 +202,7 @@ pub fn analyse(spectra: &[Spectrum], settings: &Settings) -> Result<Analysis> {
     let aperture_cm2 = settings.aperture.area_cm2(settings.geometry.observer_au);
     let bands = band_results(settings, &fits, &home, aperture_cm2, &mut caveats);
     note_disagreement(settings, &bands, &mut caveats);
+    let dust = dust(settings, &fits, &mut caveats);
     let plans = species_plans(settings, &fits, &home);
     let blocks = flux_blocks(settings, &fits);
     if plans.is_empty() {
@@ -204,6 +210,7 @@ pub fn analyse(spectra: &[Spectrum], settings: &Settings) -> Result<Analysis> {
             aperture_cm2,
             fits,
             bands,
+            dust,
             species: vec![],
             ratios: vec![],
             caveats,
@@ -220,6 +227,7 @@ pub fn analyse(spectra: &[Spectrum], settings: &Settings) -> Result<Analysis> {
         aperture_cm2,
         fits,
         bands,
+        dust,
         species,
         ratios,
         caveats,

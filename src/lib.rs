@@ -16,6 +16,7 @@ pub mod atomic;
 pub mod cli;
 pub mod coma;
 pub mod comparison;
+pub mod dust;
 pub mod efficiency;
 pub mod figures;
 pub mod fit;

@@ -73,8 +73,8 @@ impl Measure {
         self.override_plan(&mut file.plan);
         let tables = load_tables(&file)?;
         let mut checked = check(&file, &tables)?;
-        let (spectra, understood) = read_spectra(&checked.files)?;
-        checked.settle_frames(&file, &understood)?;
+        let (mut spectra, understood) = read_spectra(&checked.files)?;
+        checked.settle(&file, &understood, &mut spectra)?;
         if self.check {
             let bands = checked.settings.bands.len();
             output::complain(&format!(
@@ -87,7 +87,9 @@ impl Measure {
         let inputs = checked
             .files
             .iter()
-            .map(|(path, _)| hash(path))
+            .map(|(path, _)| path)
+            .chain(&checked.curves)
+            .map(|path| hash(path))
             .collect::<Result<Vec<_>>>()?;
         let analysis = analyse(&spectra, &checked.settings)?;
         let folder = self

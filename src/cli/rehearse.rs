@@ -46,8 +46,8 @@ impl Rehearse {
         let file = read_plan(&self.plan)?;
         let tables = load_tables(&file)?;
         let mut checked = check(&file, &tables)?;
-        let (spectra, understood) = read_spectra(&checked.files)?;
-        checked.settle_frames(&file, &understood)?;
+        let (mut spectra, understood) = read_spectra(&checked.files)?;
+        checked.settle(&file, &understood, &mut spectra)?;
         let settings = &checked.settings;
         let seed = self.seed.unwrap_or(settings.draws.seed);
         let draws = DrawSettings {

@@ -71,6 +71,24 @@ impl ApertureKm {
     }
 }
 
+impl ApertureKm {
+    /// Radius in km of the centred circle that takes in as much of a coma ∝ 1/ρ as this aperture does:
+    /// its own radius for a circle, (1/2π) ∮ r(θ) dθ along the edge of a rectangle.
+    pub fn equivalent_radius_km(&self) -> f64 {
+        match *self {
+            Self::Circle { radius_km } => radius_km,
+            Self::Annulus { inner_km, outer_km } => outer_km - inner_km,
+            Self::Rectangle { x_km, y_km } => {
+                let content = |r: f64| r;
+                (edge(y_km.1, x_km, &content) - edge(y_km.0, x_km, &content)
+                    + edge(x_km.1, y_km, &content)
+                    - edge(x_km.0, y_km, &content))
+                    / TAU
+            }
+        }
+    }
+}
+
 /// Column density N v/Q in km⁻¹ at a projected distance ρ > 0 in km; N = Q/v × this.
 pub fn column_km(lengths: &Lengths, rho_km: f64) -> f64 {
     let parent = lengths.parent_km;

@@ -30,7 +30,7 @@ pub use fitted_continuum::{FittedContinuum, FittedThermal};
 pub use form::{Form, Rotor, Template};
 pub use model::WindowModel;
 pub use pick::SampleUse;
-pub use profile::Sampling;
+pub use profile::{ProfileValue, Sampling, gaussian, gaussian_over_pixel};
 pub use results::{BandFit, SampleFit, SpectrumFit, WindowFit};
 pub use settings::{
     BandModel, ContinuumModel, FitSettings, Freedom, Limits, Resolution, Thermal, Uncertainty,

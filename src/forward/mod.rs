@@ -8,7 +8,7 @@ mod faintest;
 mod scene;
 
 pub use faintest::{Expected, ExpectedBand, FaintestRatio, expect};
-pub use scene::{Noise, SceneBand, SceneSettings, SimulatedSample, StraightContinuum};
+pub use scene::{Noise, SceneBand, SceneContinuum, SceneSettings, SimulatedSample};
 
 use crate::coma::{ApertureKm, Lengths, molecules_km, molecules_per_flux};
 use crate::ground::constants::FWHM_PER_SIGMA;

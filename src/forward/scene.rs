@@ -1,26 +1,53 @@
 //! A scene: what a comet of given composition would look like through the instrument.
 
-use super::{band_flux_erg_s_cm2, gaussian_per_aa, grid_aa};
+use super::{band_flux_erg_s_cm2, grid_aa};
 use crate::analysis::Settings;
 use crate::coma::ApertureKm;
-use crate::fit::Resolution;
+use crate::fit::{
+    Carrier, Resolution, Sampling, Structure, gaussian, gaussian_over_pixel, planck_erg_s_cm2_sr_aa,
+};
 use crate::frame::Frame;
-use crate::ground::constants::LIGHT_KM_S;
+use crate::ground::constants::{FWHM_PER_SIGMA, LIGHT_KM_S};
 use crate::ground::{Error, Result, Species, did_you_mean};
 use crate::spectrum::{Columns, LineNumbers, Spectrum};
 use rand::SeedableRng;
 use rand_distr::{Distribution, StandardNormal};
 use rand_xoshiro::Xoshiro256PlusPlus;
+use std::sync::Arc;
 
-/// A straight continuum: F(λ) = F₀ [1 + s (λ − λ₀)/1000 Å], in the frame of the observer.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct StraightContinuum {
+/// A continuum F(λ) = F₀ [1 + s (λ − λ₀)/1000 Å] · C(λ)/C(λ₀) + thermal emission, in the frame of the
+/// observer.
+#[derive(Clone, Debug)]
+pub struct SceneContinuum {
     /// F₀, erg s⁻¹ cm⁻² Å⁻¹ in the aperture.
     pub flux_erg_s_cm2_aa: f64,
     /// λ₀, vacuum Å.
     pub at_aa: f64,
     /// s, per 1000 Å.
     pub slope_per_1000_aa: f64,
+    /// C, in the frame of the comet; 1 without one.
+    pub carrier: Option<Arc<Carrier>>,
+    /// Thermal flux density at λ₀, erg s⁻¹ cm⁻² Å⁻¹, and its temperature, K.
+    pub thermal: Option<(f64, f64)>,
+}
+
+impl SceneContinuum {
+    /// Flux density at an observed wavelength, Å; `doppler` is observed over rest wavelength, `pixel`
+    /// the edges to average the carrier over, if it is to be.
+    fn at(&self, x_aa: f64, doppler: f64, pixel_aa: Option<(f64, f64)>) -> f64 {
+        let slope = 1.0 + self.slope_per_1000_aa * (x_aa - self.at_aa) / 1000.0;
+        let shape = self.carrier.as_ref().map_or(1.0, |c| {
+            let here = match pixel_aa {
+                Some((low, high)) => c.over_pixel((low / doppler, high / doppler)),
+                None => c.at(x_aa / doppler),
+            };
+            here / c.at(self.at_aa / doppler)
+        });
+        let thermal = self.thermal.map_or(0.0, |(flux, k)| {
+            flux * planck_erg_s_cm2_sr_aa(x_aa, k) / planck_erg_s_cm2_sr_aa(self.at_aa, k)
+        });
+        self.flux_erg_s_cm2_aa * slope * shape + thermal
+    }
 }
 
 /// Noise of one sample, σ = √((r F)² + σ₀²) · √(t₀/t).
@@ -35,12 +62,12 @@ pub struct Noise {
 }
 
 /// What to simulate, besides the checked settings of the plan.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug)]
 pub struct SceneSettings {
     /// Production rates, s⁻¹. A measured species that is not named emits nothing.
     pub production_per_s: Vec<(Species, f64)>,
     /// The continuum.
-    pub continuum: StraightContinuum,
+    pub continuum: SceneContinuum,
     /// The noise.
     pub noise: Noise,
     /// Range, vacuum Å in the observer's frame.
@@ -60,8 +87,10 @@ pub struct SceneBand {
     pub species: Option<Species>,
     /// Rest centre, vacuum Å.
     pub centre_aa: f64,
-    /// Full width with the instrument's, Å.
+    /// Full width of each line with the instrument's, Å.
     pub fwhm_aa: f64,
+    /// Its lines.
+    pub structure: Structure,
     /// Flux, erg s⁻¹ cm⁻².
     pub flux_erg_s_cm2: f64,
 }
@@ -123,6 +152,7 @@ impl SceneSettings {
                 species: band.species.clone(),
                 centre_aa,
                 fwhm_aa: fwhm.hypot(self.resolution.fwhm_aa(centre_aa)),
+                structure: band.model.structure.clone(),
                 flux_erg_s_cm2,
             });
         }
@@ -212,15 +242,14 @@ impl SceneSettings {
         let doppler = self.doppler(settings);
         let mut rng = seed.map(Xoshiro256PlusPlus::seed_from_u64);
         let shorter = (self.noise.exposure_s / exposure_s).sqrt();
-        let sample = |x: f64| {
-            let c = self.continuum;
-            let slope = 1.0 + c.slope_per_1000_aa * (x - c.at_aa) / 1000.0;
+        let grid = self.wavelengths_aa();
+        let per_pixel = settings.spectra[0].fit.sampling == Sampling::Pixel;
+        let sample = |i: usize| {
+            let x = grid[i];
+            let pixel = per_pixel.then(|| pixel_aa(&grid, i));
             // A band keeps its flux from frame to frame, so its density falls as it is stretched.
-            let emission: f64 = bands
-                .iter()
-                .map(|b| b.flux_erg_s_cm2 * gaussian_per_aa(x / doppler, b.centre_aa, b.fwhm_aa))
-                .sum();
-            let clean = c.flux_erg_s_cm2_aa * slope + emission / doppler;
+            let emission: f64 = bands.iter().map(|b| b.at(x, doppler, pixel)).sum();
+            let clean = self.continuum.at(x, doppler, pixel) + emission / doppler;
             let sigma =
                 (self.noise.relative * clean).hypot(self.noise.floor_erg_s_cm2_aa) * shorter;
             let noise = rng.as_mut().map_or(0.0, |r| StandardNormal.sample(r));
@@ -230,7 +259,7 @@ impl SceneSettings {
                 sigma_erg_s_cm2_aa: sigma,
             }
         };
-        Ok(self.wavelengths_aa().into_iter().map(sample).collect())
+        Ok((0..grid.len()).map(sample).collect())
     }
 
     /// The spectrum without noise but with its errors after an exposure in s, as a reader gives it.
@@ -248,4 +277,41 @@ impl SceneSettings {
         };
         Spectrum::from_columns("the simulated spectrum", columns, false)
     }
+}
+
+impl SceneBand {
+    /// Flux density in the comet's frame at an observed wavelength, averaged over a pixel (observed Å)
+    /// where one is given.
+    fn at(&self, x_aa: f64, doppler: f64, pixel_aa: Option<(f64, f64)>) -> f64 {
+        let lines = self.structure.lines().iter();
+        let rest = pixel_aa.map(|(low, high)| (low / doppler, high / doppler));
+        let shape: f64 = lines
+            .map(|(ratio, share)| {
+                let centre = self.centre_aa * ratio;
+                let sigma = self.fwhm_aa / FWHM_PER_SIGMA;
+                let value = match rest {
+                    Some((low, high)) => gaussian_over_pixel(low, high, centre, sigma),
+                    None => gaussian(x_aa / doppler, centre, sigma),
+                };
+                share * value.value
+            })
+            .sum();
+        self.flux_erg_s_cm2 * shape
+    }
+}
+
+/// Edges of a sample half-way to its neighbours.
+fn pixel_aa(grid: &[f64], i: usize) -> (f64, f64) {
+    let last = grid.len() - 1;
+    let before = if i > 0 {
+        grid[i] - grid[i - 1]
+    } else {
+        grid[1] - grid[0]
+    };
+    let after = if i < last {
+        grid[i + 1] - grid[i]
+    } else {
+        before
+    };
+    (grid[i] - 0.5 * before, grid[i] + 0.5 * after)
 }

@@ -1,12 +1,14 @@
 //! Floor 8, an edge: the plan file (TOML) and how it becomes checked settings.
 //!
 //! May import every floor. A [`Plan`] never travels below this floor: each floor has its own small
-//! settings struct. Nothing here reads a spectrum.
+//! settings struct. Nothing here reads a spectrum
+//! to be measured, only curves that belong to the settings.
 
 mod check;
 mod document;
 mod resolve;
 mod schema;
+mod schema_light;
 
 pub use check::{Checked, check, instant, orbit, site};
 pub use document::{PlanFile, read_plan};
@@ -14,5 +16,6 @@ pub use resolve::to_toml;
 pub use schema::{
     AperturePlan, BandPlan, ColumnPlan, ColumnsPlan, ComaPlan, CometPlan, ContinuumPlan, DatePlan,
     DrawsPlan, LifetimePlan, LinesPlan, MeasurePlan, OrbitPlan, Plan, SimulateContinuumPlan,
-    SimulateNoisePlan, SimulatePlan, SitePlan, SpectrumPlan, StatePlan, TablesPlan,
+    SimulateNoisePlan, SimulatePlan, SitePlan, SpectrumPlan, StarPlan, StatePlan, TablesPlan,
+    ThermalPlan, TransmissionPlan,
 };

@@ -22,6 +22,23 @@ pub(super) fn defaults(plan: &Plan, folder: &Path) -> Plan {
     for s in &mut out.spectrum {
         s.file = absolute(&s.file);
         s.sampling.get_or_insert_with(|| "centre".to_owned());
+        for name in [
+            s.instrument_fwhm_file.as_mut(),
+            s.transmission.as_mut().map(|t| &mut t.file),
+        ]
+        .into_iter()
+        .flatten()
+        {
+            *name = absolute(name);
+        }
+    }
+    for name in out
+        .band
+        .iter_mut()
+        .filter_map(|b| b.template.as_mut())
+        .chain(out.continuum.star.as_mut().map(|s| &mut s.file))
+    {
+        *name = absolute(name);
     }
     out.measure
         .basis

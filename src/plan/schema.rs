@@ -5,6 +5,8 @@ use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
 use std::collections::BTreeMap;
 
+pub use super::schema_light::{ContinuumPlan, StarPlan, ThermalPlan, TransmissionPlan};
+
 /// A plan: which spectra, of which comet, what to measure and how.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
 #[serde(deny_unknown_fields)]
@@ -195,6 +197,13 @@ pub struct SpectrumPlan {
     /// Or its full width at half maximum in the wavelength unit.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub instrument_fwhm: Option<f64>,
+    /// Or a two-column text file of wavelength and full width at half maximum, both in the wavelength
+    /// unit.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub instrument_fwhm_file: Option<String>,
+    /// Transmission of the air, or of anything else in the way, to divide by.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub transmission: Option<TransmissionPlan>,
     /// Frame of the wavelengths: "observer", "comet", "geocentric", "heliocentric" or "barycentric"
     /// (default: what a FITS file says, else "observer").
     #[serde(default, skip_serializing_if = "Option::is_none")]
@@ -267,6 +276,17 @@ pub struct MeasurePlan {
     /// Signal-to-noise from which centre and width of an "auto" band are fitted (default 10).
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub free_shape_sigma: Option<f64>,
+    /// Drop samples farther than this many errors from the fit, at most three in a row (default: none
+    /// is dropped; 5 is usual against cosmic-ray hits).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub clip_sigma: Option<f64>,
+    /// Scale the given errors to a reduced chi-square of one (default false).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub scale_errors: Option<bool>,
+    /// Where the errors of the fluxes come from: "covariance" (default), "profile", "residual bootstrap",
+    /// "pair bootstrap" or "walkers".
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub errors_from: Option<String>,
 }
 
 /// A custom band, or changes to a band of the line lists with the same id.
@@ -305,13 +325,44 @@ pub struct BandPlan {
     /// Where the g given here comes from.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub g_source: Option<String>,
-    /// "gaussian" (default) or "envelope": the rotational lines of the band at `temperature_k`, each
-    /// with the instrument's width.
+    /// "gaussian" (default); "envelope": the rotational lines of the band at `temperature_k`, each with
+    /// the instrument's width; "window": the flux between two wavelengths above the continuum, other
+    /// bands subtracted; "template": a profile of your own.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub shape: Option<String>,
+    /// Limits of a band with shape "window".
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub between: Option<[f64; 2]>,
+    /// Two-column text file of a band with shape "template": wavelength and relative intensity at the
+    /// instrument's resolution.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub template: Option<String>,
+    /// Lines of a multiplet with fixed flux ratios: pairs of wavelength and relative flux, instead of
+    /// centre and fwhm.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub multiplet: Vec<[f64; 2]>,
     /// Rotational temperature of an envelope, K (default 70 K over the heliocentric distance in au).
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub temperature_k: Option<f64>,
+    /// "held" (default), "auto" or "free": whether the temperature of an envelope is fitted.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub temperature_is: Option<Freedom>,
+    /// Fit the wings of a Gaussian too, by Gauss–Hermite terms of third and fourth order: "held"
+    /// (default: none), "auto" or "free".
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub wings_are: Option<Freedom>,
+    /// Limits of the fitted centre.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub centre_range: Option<[f64; 2]>,
+    /// Limits of the fitted full width at half maximum, instrument included.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub fwhm_range: Option<[f64; 2]>,
+    /// Limits of the flux, erg s⁻¹ cm⁻²; they bias weak bands.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub flux_range: Option<[f64; 2]>,
+    /// Limits of the fitted temperature, K.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub temperature_range: Option<[f64; 2]>,
     /// "auto" (default), "free" or "held".
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub centre_is: Option<Freedom>,
@@ -324,6 +375,20 @@ pub struct BandPlan {
     /// Number of the spectrum to measure it in (default: the first that covers it).
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub spectrum: Option<usize>,
+}
+
+impl BandPlan {
+    /// A centre where only limits, a multiplet or a template tell of one.
+    pub(super) fn rough_centre(&self) -> Option<f64> {
+        let middle = |r: [f64; 2]| 0.5 * (r[0] + r[1]);
+        let lines = self.multiplet.iter().map(|l| l[0]);
+        let (low, high) = lines.fold((f64::INFINITY, 0.0_f64), |(a, b), w| (a.min(w), b.max(w)));
+        if low < high || self.multiplet.len() == 1 {
+            return Some(0.5 * (low + high));
+        }
+        let templated = self.template.as_ref().and(self.window).map(middle);
+        self.between.map(middle).or(templated)
+    }
 }
 
 /// All lines of an atom in some windows: one column per window, relative fluxes from the statistical
@@ -347,27 +412,6 @@ pub struct LinesPlan {
     /// Their medium (default: that of the first spectrum).
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub medium: Option<String>,
-}
-
-/// The continuum.
-#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize, JsonSchema)]
-#[serde(deny_unknown_fields)]
-pub struct ContinuumPlan {
-    /// Chebyshev order in every window (default 2; 3 in windows wider than 15 %).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub order: Option<usize>,
-    /// Unit of the ranges (default: that of the first spectrum).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub unit: Option<String>,
-    /// Medium of the ranges (default: that of the first spectrum).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub medium: Option<String>,
-    /// If given, samples away from the bands are used only inside these rest-frame ranges.
-    #[serde(default, skip_serializing_if = "Vec::is_empty")]
-    pub ranges: Vec<[f64; 2]>,
-    /// Rest-frame ranges that are never used.
-    #[serde(default, skip_serializing_if = "Vec::is_empty")]
-    pub exclude: Vec<[f64; 2]>,
 }
 
 /// The coma model.
@@ -463,7 +507,8 @@ pub struct SimulatePlan {
     pub noise: SimulateNoisePlan,
 }
 
-/// A straight continuum: flux_density · (1 + slope_per_1000_aa · (λ − at)/1000 Å).
+/// The continuum of the simulated spectrum: flux_density · (1 + slope_per_1000_aa · (λ − at)/1000 Å),
+/// times sunlight over its value at `at` where `[continuum]` says so, plus thermal emission.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
 #[serde(deny_unknown_fields)]
 pub struct SimulateContinuumPlan {
@@ -474,6 +519,10 @@ pub struct SimulateContinuumPlan {
     /// Relative change per 1000 Å (default 0).
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub slope_per_1000_aa: Option<f64>,
+    /// Thermal flux density at the same wavelength, in the same unit; its temperature is that of
+    /// `[continuum.thermal]` (default 0).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub thermal_flux_density: Option<f64>,
 }
 
 /// Noise per sample: the two parts in square, times √(exposure_s / exposure).

@@ -1,6 +1,7 @@
 //! `result.json`.
 
 use crate::analysis::{Analysis, BandResult, RatioResult, Settings, SpeciesResult};
+use crate::fit::SampleUse;
 use crate::frame::Geometry;
 use serde::Serialize;
 
@@ -24,6 +25,8 @@ struct Document<'a> {
     draws: usize,
     fits: Vec<FitOut>,
     bands: Vec<BandOut<'a>>,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    dust: Vec<DustOut>,
     species: Vec<SpeciesOut<'a>>,
     ratios: Vec<RatioOut<'a>>,
     standings: Vec<StandingOut<'a>>,
@@ -47,6 +50,29 @@ struct FitOut {
     dof: usize,
     continuum_order: usize,
     errors_estimated: bool,
+    errors_scaled: Option<f64>,
+    correlation_factor: Option<f64>,
+    samples_clipped: usize,
+}
+
+#[derive(Serialize)]
+struct DustOut {
+    spectrum: String,
+    window_aa: [f64; 2],
+    reddening_percent_per_1000_aa: Option<f64>,
+    reddening_sigma: Option<f64>,
+    afrho: Vec<AfrhoOut>,
+    temperature_k: Option<f64>,
+    temperature_sigma_k: Option<f64>,
+    thermal_erg_s_cm2_aa: Option<f64>,
+    thermal_sigma_erg_s_cm2_aa: Option<f64>,
+}
+
+#[derive(Serialize)]
+struct AfrhoOut {
+    wavelength_aa: f64,
+    afrho_cm: Option<f64>,
+    afrho_sigma_cm: Option<f64>,
 }
 
 #[derive(Serialize)]
@@ -59,6 +85,16 @@ struct BandOut<'a> {
     fwhm_sigma_aa: Option<f64>,
     flux_erg_s_cm2: Option<f64>,
     flux_sigma_erg_s_cm2: Option<f64>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    flux_low68_erg_s_cm2: Option<f64>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    flux_high68_erg_s_cm2: Option<f64>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    temperature_k: Option<f64>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    temperature_sigma_k: Option<f64>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    wings: Option<[f64; 2]>,
     detected: bool,
     flux_limit_erg_s_cm2: Option<f64>,
     g_photons_s: Option<f64>,
@@ -140,6 +176,7 @@ pub fn result_json(analysis: &Analysis, settings: &Settings, inputs: &[Input]) -
         draws: settings.draws.count,
         fits: fits(analysis),
         bands: analysis.bands.iter().map(band).collect(),
+        dust: dust(analysis),
         species: analysis
             .species
             .iter()
@@ -183,6 +220,13 @@ fn fits(analysis: &Analysis) -> Vec<FitOut> {
                 dof: w.dof,
                 continuum_order: w.continuum_order,
                 errors_estimated: w.errors_estimated,
+                errors_scaled: w.errors_scaled,
+                correlation_factor: w.inflation,
+                samples_clipped: w
+                    .samples
+                    .iter()
+                    .filter(|s| s.sample_use == SampleUse::Clipped)
+                    .count(),
             })
         })
         .collect()
@@ -198,6 +242,11 @@ fn band(b: &BandResult) -> BandOut<'_> {
         fwhm_sigma_aa: b.fit.fwhm_sigma_aa.and_then(finite),
         flux_erg_s_cm2: finite(b.fit.flux_erg_s_cm2.value),
         flux_sigma_erg_s_cm2: finite(b.fit.flux_erg_s_cm2.sigma),
+        flux_low68_erg_s_cm2: b.fit.flux_interval_erg_s_cm2.and_then(|i| finite(i.0)),
+        flux_high68_erg_s_cm2: b.fit.flux_interval_erg_s_cm2.and_then(|i| finite(i.1)),
+        temperature_k: b.fit.temperature_k.and_then(|t| finite(t.0)),
+        temperature_sigma_k: b.fit.temperature_k.and_then(|t| finite(t.1?)),
+        wings: b.fit.wings.map(|w| [w[0].0, w[1].0]),
         detected: b.fit.detected,
         flux_limit_erg_s_cm2: b.fit.flux_limit_erg_s_cm2.and_then(finite),
         g_photons_s: b.efficiency.as_ref().map(|g| g.g_photons_s),
@@ -206,6 +255,33 @@ fn band(b: &BandResult) -> BandOut<'_> {
         column_cm2: b.column_cm2.and_then(|c| finite(c.value)),
         column_sigma_cm2: b.column_cm2.and_then(|c| finite(c.sigma)),
     }
+}
+
+fn dust(analysis: &Analysis) -> Vec<DustOut> {
+    let label = |i: usize| {
+        let found = analysis.fits.iter().find(|(of, _)| *of == i);
+        found.map_or_else(String::new, |(_, f)| f.label.clone())
+    };
+    let dust = analysis.dust.iter().map(|d| DustOut {
+        spectrum: label(d.spectrum),
+        window_aa: [d.window_aa.0, d.window_aa.1],
+        reddening_percent_per_1000_aa: d.reddening_percent.and_then(|s| finite(s.value)),
+        reddening_sigma: d.reddening_percent.and_then(|s| finite(s.sigma)),
+        afrho: d
+            .afrho_cm
+            .iter()
+            .map(|(x, a)| AfrhoOut {
+                wavelength_aa: *x,
+                afrho_cm: finite(a.value),
+                afrho_sigma_cm: finite(a.sigma),
+            })
+            .collect(),
+        temperature_k: d.temperature_k.and_then(|t| finite(t.0)),
+        temperature_sigma_k: d.temperature_k.and_then(|t| finite(t.1?)),
+        thermal_erg_s_cm2_aa: d.thermal_erg_s_cm2_aa.and_then(|t| finite(t.value)),
+        thermal_sigma_erg_s_cm2_aa: d.thermal_erg_s_cm2_aa.and_then(|t| finite(t.sigma)),
+    });
+    dust.collect()
 }
 
 fn species<'a>(s: &'a SpeciesResult, settings: &'a Settings) -> SpeciesOut<'a> {

@@ -1,6 +1,7 @@
 //! The table for people.
 
 use crate::analysis::{Analysis, BandResult, RatioResult, Settings, SpeciesResult};
+use crate::dust::DustResult;
 use crate::ground::Measured;
 use crate::ratio::RatioKind;
 use comfy_table::presets;
@@ -29,6 +30,10 @@ pub fn summary_table(analysis: &Analysis, settings: &Settings) -> String {
     if !analysis.ratios.is_empty() {
         out.push('\n');
         out.push_str(&ratios(&analysis.ratios));
+    }
+    if !analysis.dust.is_empty() {
+        out.push('\n');
+        out.push_str(&dust(&analysis.dust));
     }
     if !analysis.caveats.is_empty() {
         out.push_str("\nCaveats\n");
@@ -94,6 +99,47 @@ fn bands(list: &[BandResult]) -> String {
             "S/N",
             "g photons/s",
             "column cm⁻²",
+        ],
+        rows,
+    )
+}
+
+fn dust(list: &[DustResult]) -> String {
+    let digits = |m: Measured, unit: &str| {
+        let digits = (1 - m.sigma.log10().floor() as i32).clamp(0, 4) as usize;
+        format!("{:.digits$} ± {:.digits$}{unit}", m.value, m.sigma)
+    };
+    let dash = || "–".to_owned();
+    let rows = list
+        .iter()
+        .map(|d| {
+            let afrho: Vec<String> = d
+                .afrho_cm
+                .iter()
+                .map(|(x, a)| format!("{} at {x:.0} Å", digits(*a, "")))
+                .collect();
+            vec![
+                format!("{:.0}–{:.0}", d.window_aa.0, d.window_aa.1),
+                d.reddening_percent.map_or_else(dash, |s| digits(s, "")),
+                if afrho.is_empty() {
+                    dash()
+                } else {
+                    afrho.join("; ")
+                },
+                match d.temperature_k {
+                    Some((k, Some(sigma))) => digits(Measured::new(k, sigma), ""),
+                    Some((k, None)) => format!("{k:.0} held"),
+                    None => dash(),
+                },
+            ]
+        })
+        .collect();
+    grid(
+        &[
+            "dust in Å",
+            "reddening %/1000 Å",
+            "A(θ)fρ cm",
+            "temperature K",
         ],
         rows,
     )

@@ -138,6 +138,23 @@ impl Spectrum {
         })
     }
 
+    /// Divides sample by sample; those below `floor` are flagged. Returns how many were.
+    pub(super) fn divide_samples(&mut self, through: &[f64], floor: f64) -> usize {
+        let mut below = 0;
+        for (i, t) in through.iter().enumerate() {
+            if *t < floor {
+                below += usize::from(self.good[i]);
+                self.good[i] = false;
+                continue;
+            }
+            self.flux_erg_s_cm2_aa[i] /= t;
+            if let Some(sigma) = &mut self.sigma_erg_s_cm2_aa {
+                sigma[i] /= t;
+            }
+        }
+        below
+    }
+
     /// Name for messages, usually the file name.
     pub fn label(&self) -> &str {
         &self.label

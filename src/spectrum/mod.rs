@@ -3,6 +3,7 @@
 //! Imports floor 0 only. Never guesses a unit and never repairs a sample silently.
 
 mod checked;
+mod divide;
 mod fits;
 mod text;
 

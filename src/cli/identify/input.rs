@@ -70,8 +70,8 @@ fn planned(given: &Identify) -> Result<Job> {
     let comparison = place(&file.plan.tables.comparison);
     let tables = Tables::load(line_lists.as_deref(), comparison.as_deref())?;
     let mut checked = check(&file, &tables)?;
-    let (spectra, understood) = read_spectra(&checked.files)?;
-    checked.settle_frames(&file, &understood)?;
+    let (mut spectra, understood) = read_spectra(&checked.files)?;
+    checked.settle(&file, &understood, &mut spectra)?;
     let settings = &checked.settings;
     let tasks = spectra
         .iter()

@@ -65,15 +65,8 @@ impl Checker<'_> {
         if custom.is_none() && listed.is_none() {
             return Err(self.unknown_band(id));
         }
-        let envelope = self.envelope(id, own, geometry, &keys)?;
         let mut model = self.band_model(id, own, listed, &keys)?;
-        let enveloped = envelope.is_some();
-        if let Some((centre_aa, structure)) = envelope {
-            model.centre_aa = centre_aa;
-            model.structure = structure;
-            model.fwhm_aa = Some(0.0);
-            model.width = own.width_is.unwrap_or(Freedom::Held);
-        }
+        let enveloped = self.shape(&mut model, own, geometry, &keys)?;
         let species = own
             .species
             .as_deref()
@@ -179,7 +172,13 @@ impl Checker<'_> {
                 unit.vacuum_aa(c, medium)
             }
             (None, Some(b)) => b.centre_aa,
-            (None, None) => return Err(needed("centre")),
+            (None, None) => match own.rough_centre() {
+                Some(c) => {
+                    let (unit, medium) = axis()?;
+                    unit.vacuum_aa(c, medium)
+                }
+                None => return Err(needed("centre")),
+            },
         };
         let fwhm_aa = match (own.fwhm, listed) {
             (Some(w), _) => Some(width_aa(w, own.centre, centre_aa, axis()?.0)),

@@ -2,11 +2,12 @@
 
 use super::Checker;
 use super::convert::{number_in, range_aa};
-use crate::fit::FitSettings;
+use crate::fit::{FitSettings, Uncertainty};
+use crate::frame::Geometry;
 use crate::ground::{Error, Result};
 
 impl Checker<'_> {
-    pub(super) fn continuum(&self) -> Result<FitSettings> {
+    pub(super) fn continuum(&self, geometry: &Geometry) -> Result<FitSettings> {
         let c = &self.plan.continuum;
         let mut fit = FitSettings::new(Vec::new());
         fit.continuum.order = c.order;
@@ -19,6 +20,20 @@ impl Checker<'_> {
                 &["continuum", "order"],
             ));
         }
+        fit.continuum.whole = match c.over.as_deref() {
+            None | Some("windows") => false,
+            Some("spectrum") => true,
+            Some(other) => {
+                return Err(self.file.point(
+                    Error::plan(format!(
+                        "over {other:?} is neither \"windows\" nor \"spectrum\""
+                    )),
+                    &["continuum", "over"],
+                ));
+            }
+        };
+        fit.continuum.thermal = self.thermal(geometry.heliocentric_au)?;
+        self.robustness(&mut fit)?;
         let ranges = |list: &[[f64; 2]], key: &str| {
             if list.is_empty() {
                 return Ok(Vec::new());
@@ -46,5 +61,34 @@ impl Checker<'_> {
         )
         .map_err(|e| self.file.point(e, &["measure", "free_shape_sigma"]))?;
         Ok(fit)
+    }
+
+    /// Clipping, scaling, and where errors come from.
+    fn robustness(&self, fit: &mut FitSettings) -> Result<()> {
+        let m = &self.plan.measure;
+        let point = |e: Error, key: &str| self.file.point(e, &["measure", key]);
+        if let Some(clip) = m.clip_sigma {
+            let clip = number_in("clip_sigma", clip, 2.5, 100.0, "5 is usual")
+                .map_err(|e| point(e, "clip_sigma"))?;
+            fit.clip_sigma = Some(clip);
+        }
+        fit.scale_errors = m.scale_errors.unwrap_or(false);
+        fit.seed = self.plan.draws.seed.expect("invariant: default filled in");
+        fit.uncertainty = match m.errors_from.as_deref() {
+            None | Some("covariance") => Uncertainty::Covariance,
+            Some("profile") => Uncertainty::Profile,
+            Some("residual bootstrap") => Uncertainty::ResidualBootstrap,
+            Some("pair bootstrap") => Uncertainty::PairBootstrap,
+            Some("walkers") => Uncertainty::Walkers,
+            Some(other) => {
+                return Err(point(
+                    Error::plan(format!("errors_from {other:?} is not known")).remedy(
+                        "one of \"covariance\", \"profile\", \"residual bootstrap\", \"pair bootstrap\", \"walkers\"",
+                    ),
+                    "errors_from",
+                ));
+            }
+        };
+        Ok(())
     }
 }

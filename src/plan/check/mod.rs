@@ -5,8 +5,10 @@ mod bands;
 mod coma;
 mod continuum;
 mod convert;
+mod curves;
 mod efficiency;
 mod geometry;
+mod light;
 mod lines;
 mod ratios;
 mod shape;
@@ -22,10 +24,11 @@ use crate::plan::document::PlanFile;
 use crate::plan::resolve::defaults;
 use crate::plan::schema::Plan;
 use crate::ratio::DrawSettings;
-use crate::spectrum::{Layout, Understood};
+use crate::spectrum::{Layout, Spectrum, Understood};
 use crate::tables::Tables;
 use convert::{aperture, number_in};
 use geometry::date_text;
+use light::Light;
 use std::collections::BTreeMap;
 use std::path::PathBuf;
 
@@ -37,6 +40,9 @@ pub struct Checked {
     pub files: Vec<(PathBuf, Layout)>,
     /// What to simulate, where the plan says.
     pub scene: Option<SceneSettings>,
+    /// Files of curves that belong to the settings.
+    pub curves: Vec<PathBuf>,
+    light: Light,
     /// The plan with all defaults filled in and paths made absolute.
     pub resolved: Plan,
 }
@@ -53,24 +59,43 @@ pub fn check(file: &PlanFile, tables: &Tables) -> Result<Checked> {
         tables,
         caveats: Vec::new(),
         sources: BTreeMap::new(),
+        curves: Vec::new(),
     };
+    let light = checker.light()?;
     let settings = checker.settings()?;
     let files = checker.files()?;
-    let scene = checker.scene(&settings)?;
+    let scene = checker.scene(&settings, &light)?;
     Ok(Checked {
         settings,
         files,
         scene,
+        curves: std::mem::take(&mut checker.curves),
+        light,
         resolved: plan,
     })
 }
 
 impl Checked {
+    /// Everything that can be settled only once the spectra are read: frames that the files name,
+    /// transmissions divided out, sunlight brought to each spectrum's resolution.
+    ///
+    /// # Errors
+    /// As [`Checked::settle_frames`]; a curve that does not cover its spectrum.
+    pub fn settle(
+        &mut self,
+        file: &PlanFile,
+        read: &[Option<Understood>],
+        spectra: &mut [Spectrum],
+    ) -> Result<()> {
+        self.settle_frames(file, read)?;
+        self.light.settle(&mut self.settings, spectra)
+    }
+
     /// Sets the frames that the files themselves name (SPECSYS) where the plan is silent.
     ///
     /// # Errors
     /// A frame in which the comet's velocity is not known.
-    pub fn settle_frames(&mut self, file: &PlanFile, read: &[Option<Understood>]) -> Result<()> {
+    fn settle_frames(&mut self, file: &PlanFile, read: &[Option<Understood>]) -> Result<()> {
         for (i, understood) in read.iter().enumerate() {
             let plan = &self.resolved.spectrum[i];
             let said = understood.as_ref().and_then(|u| {
@@ -93,6 +118,7 @@ struct Checker<'a> {
     tables: &'a Tables,
     caveats: Vec<Caveat>,
     sources: BTreeMap<String, String>,
+    curves: Vec<PathBuf>,
 }
 
 impl Checker<'_> {
@@ -107,7 +133,7 @@ impl Checker<'_> {
         }
         let aperture =
             aperture(&self.plan.aperture).map_err(|e| self.file.point(e, &["aperture"]))?;
-        let spectra = self.spectra(sky.as_ref())?;
+        let spectra = self.spectra(&geometry, sky.as_ref())?;
         let bands = self.bands(&geometry)?;
         let ratios = self.ratios(&bands)?;
         let species = self.species(&bands, &ratios, &geometry)?;
@@ -147,6 +173,7 @@ impl Checker<'_> {
             speed_sigma,
             draws,
             detection_sigma: self.detection_sigma()?,
+            afrho_at_aa: self.afrho_at_aa()?,
             caveats: std::mem::take(&mut self.caveats),
             sources: std::mem::take(&mut self.sources).into_iter().collect(),
         })

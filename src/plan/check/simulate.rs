@@ -2,14 +2,19 @@
 
 use super::Checker;
 use super::convert::{number_in, range_aa};
+use super::light::Light;
 use crate::analysis::Settings;
-use crate::forward::{Noise, SceneSettings, StraightContinuum};
+use crate::forward::{Noise, SceneContinuum, SceneSettings};
 use crate::ground::{Error, Result, Species};
 use crate::plan::schema::SimulatePlan;
 
 impl Checker<'_> {
     /// Judges `[simulate]`, where the plan has it. Its values are in the units of the first spectrum.
-    pub(super) fn scene(&self, settings: &Settings) -> Result<Option<SceneSettings>> {
+    pub(super) fn scene(
+        &self,
+        settings: &Settings,
+        light: &Light,
+    ) -> Result<Option<SceneSettings>> {
         let Some(plan) = &self.plan.simulate else {
             return Ok(None);
         };
@@ -37,7 +42,15 @@ impl Checker<'_> {
                 "range",
             ));
         }
-        let (continuum, noise) = self.light(plan, settings)?;
+        let (mut continuum, noise) = self.scene_light(plan, settings)?;
+        // Frames move wavelengths by less than one per cent.
+        let wide = (
+            0.99 * range.0.min(continuum.at_aa),
+            1.01 * range.1.max(continuum.at_aa),
+        );
+        let velocity = settings.geometry.heliocentric_km_s;
+        let label = "the simulated spectrum";
+        continuum.carrier = light.carrier(wide, Some(&resolution), velocity, label)?;
         Ok(Some(SceneSettings {
             production_per_s: self.production(plan)?,
             continuum,
@@ -66,11 +79,11 @@ impl Checker<'_> {
     }
 
     /// Continuum and noise in cgs, of everything inside the aperture.
-    fn light(
+    fn scene_light(
         &self,
         plan: &SimulatePlan,
         settings: &Settings,
-    ) -> Result<(StraightContinuum, Noise)> {
+    ) -> Result<(SceneContinuum, Noise)> {
         let judged = |table: &str, key: &str, value: f64, low: f64, high: f64| {
             number_in(key, value, low, high, "a finite number in this range")
                 .map_err(|e| self.file.point(e, &["simulate", table, key]))
@@ -94,10 +107,22 @@ impl Checker<'_> {
         let cgs = |value: f64| flux.to_erg_s_cm2_aa(value, at_aa) * area;
         let density = judged("continuum", "flux_density", c.flux_density, 0.0, 1e30)?;
         let slope = c.slope_per_1000_aa.unwrap_or(0.0);
-        let continuum = StraightContinuum {
+        let thermal = self.thermal(settings.geometry.heliocentric_au)?;
+        let warm = c.thermal_flux_density.unwrap_or(0.0);
+        let warm = judged("continuum", "thermal_flux_density", warm, 0.0, 1e30)?;
+        if warm > 0.0 && thermal.is_none() {
+            return Err(self.file.point(
+                Error::plan("thermal_flux_density needs a temperature")
+                    .remedy("add a table [continuum.thermal]"),
+                &["simulate", "continuum", "thermal_flux_density"],
+            ));
+        }
+        let continuum = SceneContinuum {
             flux_erg_s_cm2_aa: cgs(density),
             at_aa,
             slope_per_1000_aa: judged("continuum", "slope_per_1000_aa", slope, -10.0, 10.0)?,
+            carrier: None,
+            thermal: thermal.map(|t| (cgs(warm), t.temperature_k)),
         };
         let floor = judged("noise", "floor", n.floor, f64::MIN_POSITIVE, 1e30)?;
         let relative = n.relative.unwrap_or(0.0);

@@ -3,9 +3,9 @@
 use super::Checker;
 use super::convert::{columns, file_name, fits_columns, number_in, resolution};
 use crate::analysis::SpectrumSettings;
-use crate::fit::{FitSettings, Sampling};
-use crate::frame::Frame;
+use crate::fit::{FitSettings, Resolution, Sampling};
 use crate::frame::orbit::Sky;
+use crate::frame::{Frame, Geometry};
 use crate::ground::{Caveat, Error, FluxUnit, Medium, Result, WavelengthUnit};
 use crate::plan::schema::{ColumnPlan, SpectrumPlan};
 use crate::spectrum::{ErrorKind, FitsLayout, Layout, Part, TextLayout, looks_like_fits};
@@ -120,14 +120,18 @@ impl Checker<'_> {
         Ok((unit, medium))
     }
 
-    pub(super) fn spectra(&mut self, sky: Option<&Sky>) -> Result<Vec<SpectrumSettings>> {
+    pub(super) fn spectra(
+        &mut self,
+        geometry: &Geometry,
+        sky: Option<&Sky>,
+    ) -> Result<Vec<SpectrumSettings>> {
         if self.plan.spectrum.is_empty() {
             return Err(self.file.point(
                 Error::plan("the plan names no spectrum").remedy("add a [[spectrum]] table"),
                 &["spectrum"],
             ));
         }
-        let continuum = self.continuum()?;
+        let continuum = self.continuum(geometry)?;
         (0..self.plan.spectrum.len())
             .map(|i| self.spectrum(i, &continuum, sky))
             .collect()
@@ -141,11 +145,15 @@ impl Checker<'_> {
     ) -> Result<SpectrumSettings> {
         let s = &self.plan.spectrum[i];
         let at = i.to_string();
-        let point = |e: Error, key: &str| self.file.point(e, &["spectrum", &at, key]);
         let (unit, _) = self.axis(i)?;
         let mut fit = continuum.clone();
         fit.resolution =
             resolution(s, unit).map_err(|e| self.point_at_value(e, &["spectrum", &at]))?;
+        if let Some(name) = s.instrument_fwhm_file.clone() {
+            fit.resolution = Some(self.instrument_table(i, &name)?);
+        }
+        let s = &self.plan.spectrum[i];
+        let point = |e: Error, key: &str| self.file.point(e, &["spectrum", &at, key]);
         fit.sampling = match s.sampling.as_deref() {
             None | Some("centre") => Sampling::Centre,
             Some("pixel") => Sampling::Pixel,
@@ -183,6 +191,38 @@ impl Checker<'_> {
             fit,
             calibration_sigma,
         })
+    }
+
+    /// Instrumental widths against wavelength.
+    fn instrument_table(&mut self, i: usize, name: &str) -> Result<Resolution> {
+        let at = i.to_string();
+        let keys = ["spectrum", at.as_str(), "instrument_fwhm_file"];
+        let s = &self.plan.spectrum[i];
+        if s.resolving_power.is_some() || s.instrument_fwhm.is_some() {
+            return Err(self.file.point(
+                Error::plan("the resolution is given twice")
+                    .remedy("keep one of resolving_power, instrument_fwhm, instrument_fwhm_file"),
+                &keys,
+            ));
+        }
+        let axis = self.axis_or(s.wavelength_unit.as_ref(), s.medium.as_ref(), &keys)?;
+        let WavelengthUnit::Length { aa } = axis.0 else {
+            return Err(self.file.point(
+                Error::plan("instrument_fwhm_file needs a wavelength_unit that is a length"),
+                &keys,
+            ));
+        };
+        let curve = self.curve(name, axis, &keys)?;
+        if let Some(bad) = curve.value.iter().find(|w| !(**w > 0.0 && w.is_finite())) {
+            return Err(self.file.point(
+                Error::input(format!("{name}: the width {bad} is not positive")),
+                &keys,
+            ));
+        }
+        let widths = curve.value.iter().map(|w| w * aa);
+        Ok(Resolution::Table(
+            curve.wavelength_aa.iter().copied().zip(widths).collect(),
+        ))
     }
 
     pub(super) fn files(&self) -> Result<Vec<(PathBuf, Layout)>> {
