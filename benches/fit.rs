@@ -3,7 +3,7 @@
 //! search for a start and all judgements (`fit_spectrum`).
 
 use comagauge::fit::solver::{Solver, Stop, covariance};
-use comagauge::fit::{BandModel, FitSettings, Freedom, Resolution, WindowModel, fit_spectrum};
+use comagauge::fit::{BandModel, FitSettings, Resolution, WindowModel, fit_spectrum};
 use comagauge::frame::{Aperture, Frame, Geometry, RestSpectrum, to_rest};
 use comagauge::spectrum::{Sample, Spectrum};
 use criterion::{Criterion, criterion_group, criterion_main};

@@ -500,6 +500,8 @@ fn flux_blocks(settings: &Settings, fits: &[(usize, SpectrumFit)]) -> Vec<FluxBl
             flux_erg_s_cm2: fit.bands.iter().map(|b| b.flux_erg_s_cm2.value).collect(),
             covariance: fit.flux_covariance.clone(),
             calibration_sigma: settings.spectra[*i].calibration_sigma,
+            sided: fit.sided.clone(),
+            sampled: fit.sampled.clone(),
         })
         .collect()
 }

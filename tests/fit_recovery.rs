@@ -1,8 +1,6 @@
 //! Injection and recovery with the fit alone: known Gaussians on sloped continua with known noise.
 
-use comagauge::fit::{
-    BandModel, FitSettings, Freedom, Resolution, Sampling, SpectrumFit, fit_spectrum,
-};
+use comagauge::fit::{BandModel, FitSettings, Resolution, Sampling, SpectrumFit, fit_spectrum};
 use comagauge::frame::{Aperture, Frame, Geometry, RestSpectrum, to_rest};
 use comagauge::spectrum::{Sample, Spectrum};
 use rand::SeedableRng;

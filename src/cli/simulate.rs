@@ -60,19 +60,21 @@ impl Simulate {
     pub(super) fn run(self) -> Result<()> {
         let file = read_plan(&self.plan)?;
         let tables = load_tables(&file)?;
-        let checked = check(&file, &tables)?;
-        let Some(scene) = &checked.scene else {
+        let mut checked = check(&file, &tables)?;
+        let Some(scene) = checked.scene.clone() else {
             return Err(Error::plan("the plan has no [simulate] table")
                 .in_file(&self.plan)
                 .remedy("`comagauge simulate --help` shows one"));
         };
+        let clean = [scene.clean_spectrum(&checked.settings, scene.noise.exposure_s)?];
+        checked.settle_light(&clean)?;
         let settings = &checked.settings;
-        let times = self.times(scene)?;
+        let times = self.times(&scene)?;
         let exposure_s = self.exposure.unwrap_or(scene.noise.exposure_s);
         positive("exposure", exposure_s)?;
         let seed = self.seed.unwrap_or(settings.draws.seed);
-        let csv = spectrum_csv(scene, &checked, exposure_s, seed)?;
-        let expected = expect(scene, settings, &times)?;
+        let csv = spectrum_csv(&scene, &checked, exposure_s, seed)?;
+        let expected = expect(&scene, settings, &times)?;
         let target = self.out.clone().unwrap_or_else(|| default_file(&self.plan));
         let figure = report::expected_figure(&expected, settings, Width::Double)?;
         let svg = target.with_extension("svg");

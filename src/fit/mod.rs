@@ -22,6 +22,8 @@ mod spectrum_fit;
 mod start;
 mod structure;
 mod thermal;
+mod uncertain;
+mod walkers;
 mod window;
 
 pub use carrier::Carrier;

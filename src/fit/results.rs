@@ -133,6 +133,8 @@ pub struct SpectrumFit {
     pub bands: Vec<BandFit>,
     /// Covariance of the band fluxes, (erg s⁻¹ cm⁻²)², same order.
     pub flux_covariance: DMatrix<f64>,
+    /// Distances below and above the best flux for bands whose errors come from profiles, erg s⁻¹ cm⁻².
+    pub sided: Vec<Option<(f64, f64)>>,
     /// Drawn fluxes of each window whose errors are not taken from the covariance: the bands, and
     /// one row per draw, erg s⁻¹ cm⁻².
     pub sampled: Vec<(Vec<usize>, DMatrix<f64>)>,

@@ -9,13 +9,17 @@ use super::notes::{note_band, note_window};
 use super::pick::{Group, Picked, SampleUse, limits_aa};
 use super::results::{BandFit, SampleFit, SpectrumFit, WindowFit};
 use super::robust::{CLIP_ROUNDS, clip, correlated_covariance, correlations, residuals};
-use super::settings::{BandModel, FitSettings};
+use super::settings::{BandModel, FitSettings, Uncertainty};
 use super::solver::Solver;
+use super::uncertain::{FluxErrors, flux_errors};
 use super::window::{WindowInput, WindowOutcome, fit_window};
 use crate::frame::RestSpectrum;
 use crate::ground::constants::FWHM_PER_SIGMA;
 use crate::ground::{Caveat, Error, Measured, Result};
 use nalgebra::DMatrix;
+
+/// Below this reduced χ² the data hold no noise to speak of, as in simulations without noise.
+const NO_NOISE: f64 = 0.01;
 
 /// Fits all bands of the settings to a spectrum. Bands whose windows overlap are fitted together.
 ///
@@ -31,6 +35,7 @@ pub fn fit_spectrum(spectrum: &RestSpectrum, settings: &FitSettings) -> Result<S
         windows: Vec::new(),
         bands: Vec::new(),
         flux_covariance: DMatrix::zeros(count, count),
+        sided: vec![None; count],
         sampled: Vec::new(),
         caveats: Vec::new(),
     };
@@ -114,6 +119,9 @@ struct FittedGroup<'a> {
     carrier_mean: f64,
     errors_scaled: Option<f64>,
     inflation: Option<f64>,
+    errors: Option<FluxErrors>,
+    /// Factor by which scaling and correlation raised each flux error.
+    raised: Vec<f64>,
 }
 
 impl<'a> FittedGroup<'a> {
@@ -145,8 +153,14 @@ impl<'a> FittedGroup<'a> {
                 (input, outcome) = fit(&picked, solver)?;
             }
         }
+        // Before any scaling, which would move the rise of χ² that belongs to one sigma.
+        let errors = flux_errors(settings.uncertainty, &input, &outcome, settings.seed)?;
+        let before = outcome.flux_covariance.diagonal();
         let errors_scaled = scale_errors(settings, &picked, &mut outcome);
         let inflation = raise_for_correlation(&input, &mut outcome);
+        let raised = (0..before.len())
+            .map(|b| (outcome.flux_covariance[(b, b)] / before[b]).sqrt())
+            .collect();
         let integrals = group
             .integrals
             .iter()
@@ -166,6 +180,8 @@ impl<'a> FittedGroup<'a> {
             carrier_mean,
             errors_scaled,
             inflation,
+            errors,
+            raised,
         })
     }
 
@@ -182,7 +198,10 @@ impl<'a> FittedGroup<'a> {
         let window = out.windows.len();
         for (position, &b) in all.iter().enumerate() {
             let sigma = covariance[(position, position)].sqrt();
-            let fit = self.band_fit(b, position, window, sigma);
+            let mut fit = self.band_fit(b, position, window, sigma);
+            if position < self.group.bands.len() {
+                self.own_errors(&mut fit, position, out);
+            }
             if position < self.group.bands.len() {
                 let x = &self.input.x_aa;
                 note_band(
@@ -201,9 +220,81 @@ impl<'a> FittedGroup<'a> {
                 out.flux_covariance[(b, c)] = covariance[(position, other)];
             }
         }
+        if let Some(FluxErrors::Drawn(draws, chain)) = &self.errors {
+            let mut scaled = draws * scale;
+            for (b, raised) in self.raised_draws().iter().enumerate() {
+                let best = self.outcome.flux[b] * scale;
+                for v in scaled.column_mut(b).iter_mut() {
+                    *v = best + (*v - best) * raised;
+                }
+            }
+            out.sampled.push((self.group.bands.clone(), scaled));
+            self.note_draws(*chain, &mut out.caveats);
+        }
         let window = self.window_fit(&all);
         note_window(&window, self.spectrum.label(), &mut out.caveats);
         out.windows.push(window);
+    }
+
+    /// Factors for drawn fluxes: resampled residuals have the true size already.
+    fn raised_draws(&self) -> Vec<f64> {
+        match self.settings.uncertainty {
+            Uncertainty::Walkers => self.raised.clone(),
+            _ => vec![1.0; self.raised.len()],
+        }
+    }
+
+    /// Interval and error of a flux whose errors do not come from the covariance.
+    fn own_errors(&self, fit: &mut BandFit, position: usize, out: &mut SpectrumFit) {
+        let (scale, best) = (self.picked.scale, fit.flux_erg_s_cm2.value);
+        let (below, above) = match &self.errors {
+            None => return,
+            Some(FluxErrors::Sided(sides)) => {
+                let raised = self.raised[position] * scale;
+                let sides = (sides[position].0 * raised, sides[position].1 * raised);
+                let b = self.group.bands[position];
+                out.sided[b] = Some(sides);
+                sides
+            }
+            Some(FluxErrors::Drawn(draws, _)) => {
+                let raised = self.raised_draws()[position] * scale;
+                let mut sorted: Vec<f64> = draws.column(position).iter().copied().collect();
+                sorted.sort_by(f64::total_cmp);
+                let at =
+                    |p: f64| sorted[((p * sorted.len() as f64) as usize).min(sorted.len() - 1)];
+                let best = self.outcome.flux[position];
+                (
+                    (best - at(0.158_655)) * raised,
+                    (at(0.841_345) - best) * raised,
+                )
+            }
+        };
+        fit.flux_interval_erg_s_cm2 = Some((best - below, best + above));
+        fit.flux_erg_s_cm2.sigma = 0.5 * (below + above);
+        fit.detected = fit.flux_erg_s_cm2.signal_to_noise() >= self.settings.detection_sigma;
+        fit.flux_limit_erg_s_cm2 = (!fit.detected).then(|| upper_limit(fit.flux_erg_s_cm2));
+    }
+
+    fn note_draws(&self, chain: Option<super::walkers::Chain>, caveats: &mut Vec<Caveat>) {
+        let (low, high) = self.group.window_aa;
+        if let Some(chain) = chain.filter(|c| !c.is_good()) {
+            caveats.push(Caveat::Other {
+                code: "walkers-stuck",
+                text: format!(
+                    "{low:.0}–{high:.0} Å: the walkers remember {:.0} rounds and took {:.0} % of their moves: their errors are rough",
+                    chain.autocorrelation,
+                    100.0 * chain.accepted
+                ),
+            });
+        }
+        if chain.is_none() && self.inflation.is_some() {
+            caveats.push(Caveat::Other {
+                code: "resampling-uncorrelated",
+                text: format!(
+                    "{low:.0}–{high:.0} Å: resampling takes the residuals as independent, and they are not: the errors of its fluxes are too small"
+                ),
+            });
+        }
     }
 
     fn note_integral(&self, fit: &BandFit, position: usize, caveats: &mut Vec<Caveat>) {
@@ -533,7 +624,7 @@ fn scale_errors(
 fn raise_for_correlation(input: &WindowInput<'_>, outcome: &mut WindowOutcome) -> Option<f64> {
     let (r, columns) = residuals(input, outcome);
     let rho = correlations(&r);
-    if rho.is_empty() {
+    if rho.is_empty() || outcome.chi2 < NO_NOISE * outcome.dof as f64 {
         return None;
     }
     let before = outcome.flux_covariance.clone();

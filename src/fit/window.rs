@@ -90,7 +90,6 @@ pub(super) struct WindowOutcome {
     pub flux_covariance: DMatrix<f64>,
     /// All parameters as the solver has them, their bounds, and which of them have an error.
     pub parameters: Vec<f64>,
-    #[allow(dead_code)]
     pub bounds: Vec<(f64, f64)>,
     pub free: Vec<usize>,
     /// Covariance of the parameters in `free`.

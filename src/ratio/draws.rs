@@ -1,7 +1,8 @@
 //! The shared draws: one random universe per row, the same for every species and ratio.
 //!
 //! In each draw the band fluxes of a spectrum come from one multivariate normal distribution with
-//! the fit's full covariance; every other factor (flux calibration per spectrum, g per band,
+//! the fit's full covariance, or have the form the fit gives them (sides of a profile, refits of a
+//! bootstrap, places of walkers); every other factor (flux calibration per spectrum, g per band,
 //! scale lengths per species, the expansion speed common to all) is log-normal with median one,
 //! exp(σ z), so that it cannot be negative. Whatever two species share is drawn once and cancels
 //! in their ratio.
@@ -10,7 +11,7 @@ use crate::coma::{Lengths, ResidenceGrid};
 use crate::ground::{Error, Measured, Result, Species};
 use nalgebra::{DMatrix, DVector};
 use ndarray::Array2;
-use rand::SeedableRng;
+use rand::{RngExt, SeedableRng};
 use rand_distr::{Distribution, StandardNormal};
 use rand_xoshiro::Xoshiro256PlusPlus;
 
@@ -48,6 +49,30 @@ pub struct FluxBlock {
     pub covariance: DMatrix<f64>,
     /// Relative error of the flux calibration, common to the spectrum's bands.
     pub calibration_sigma: f64,
+    /// Distances below and above the flux where they differ, one per band or none at all.
+    pub sided: Vec<Option<(f64, f64)>>,
+    /// Drawn fluxes that stand for the normal distribution: bands, and one row per draw.
+    pub sampled: Vec<(Vec<usize>, DMatrix<f64>)>,
+}
+
+impl FluxBlock {
+    /// Fluxes of one draw from the normal deviate's, where errors have another form.
+    fn shaped(&self, mut drawn: DVector<f64>, rng: &mut Xoshiro256PlusPlus) -> DVector<f64> {
+        for (b, sides) in self.sided.iter().enumerate() {
+            if let Some((below, above)) = sides {
+                let best = self.flux_erg_s_cm2[b];
+                let off = (drawn[b] - best) / self.covariance[(b, b)].sqrt();
+                drawn[b] = best + off * if off < 0.0 { below } else { above };
+            }
+        }
+        for (bands, rows) in &self.sampled {
+            let row = rng.random_range(0..rows.nrows());
+            for (column, b) in bands.iter().enumerate() {
+                drawn[*b] = rows[(row, column)];
+            }
+        }
+        drawn
+    }
 }
 
 /// One band's contribution to a species.
@@ -257,7 +282,8 @@ impl Universe {
             .map(|(block, root)| {
                 let n = block.flux_erg_s_cm2.len();
                 let z = DVector::from_fn(n, |_, _| normal(rng));
-                DVector::from_column_slice(&block.flux_erg_s_cm2) + root * z
+                let drawn = DVector::from_column_slice(&block.flux_erg_s_cm2) + root * z;
+                block.shaped(drawn, rng)
             })
             .collect();
         let calibration = blocks

@@ -165,8 +165,8 @@ impl Checker<'_> {
 }
 
 impl Light {
-    /// Divides transmissions out and gives each spectrum its carrier.
-    pub(super) fn settle(&self, settings: &mut Settings, spectra: &mut [Spectrum]) -> Result<()> {
+    /// Divides transmissions out.
+    pub(super) fn divide(&self, settings: &mut Settings, spectra: &mut [Spectrum]) -> Result<()> {
         for (i, spectrum) in spectra.iter_mut().enumerate() {
             if let Some((curve, floor)) = &self.transmissions[i] {
                 let left_out = spectrum.divide(&curve.wavelength_aa, &curve.value, *floor)?;
@@ -178,6 +178,13 @@ impl Light {
                     ),
                 });
             }
+        }
+        Ok(())
+    }
+
+    /// Gives each spectrum its carrier.
+    pub(super) fn settle(&self, settings: &mut Settings, spectra: &[Spectrum]) -> Result<()> {
+        for (i, spectrum) in spectra.iter().enumerate() {
             let x = spectrum.wavelength_aa();
             // Frames move wavelengths by less than this part.
             let slack = 1.0 + 3000.0 / LIGHT_KM_S;

@@ -88,6 +88,15 @@ impl Checked {
         spectra: &mut [Spectrum],
     ) -> Result<()> {
         self.settle_frames(file, read)?;
+        self.light.divide(&mut self.settings, spectra)?;
+        self.settle_light(spectra)
+    }
+
+    /// Sunlight brought to the resolution of each spectrum.
+    ///
+    /// # Errors
+    /// A spectrum whose resolution is not known, or a curve that does not cover it.
+    pub fn settle_light(&mut self, spectra: &[Spectrum]) -> Result<()> {
         self.light.settle(&mut self.settings, spectra)
     }
 
