@@ -196,7 +196,7 @@ impl FitSettings {
             excluded_aa: Vec::new(),
             sampling: Sampling::Centre,
             detection_sigma: 3.0,
-            free_shape_sigma: 10.0,
+            free_shape_sigma: 17.0,
         }
     }
 

@@ -9,7 +9,7 @@ use super::notes::{note_band, note_window};
 use super::pick::{Group, Picked, SampleUse, limits_aa};
 use super::results::{BandFit, SampleFit, SpectrumFit, WindowFit};
 use super::robust::{CLIP_ROUNDS, clip, correlated_covariance, correlations, residuals};
-use super::settings::{BandModel, FitSettings, Uncertainty};
+use super::settings::{BandModel, FitSettings, Freedom, Uncertainty};
 use super::solver::Solver;
 use super::uncertain::{FluxErrors, flux_errors};
 use super::window::{WindowInput, WindowOutcome, fit_window};
@@ -571,9 +571,43 @@ fn window_input<'a>(
             .iter()
             .map(|b| b.limits.flux_erg_s_cm2.map(open))
             .collect(),
+        ties: ties(settings, &bands),
         bands,
         free_shape_sigma: settings.free_shape_sigma,
     })
+}
+
+/// Two lines nearer than this many full widths are a blend.
+const BLEND_FWHM: f64 = 1.5;
+/// A band narrower than this part of the instrument's profile is a line.
+const LINE_PART: f64 = 0.5;
+
+/// The user's ties; and lines of a blend, whose shapes come from one instrument and one comet, share
+/// velocity and width too, unless the user frees them: their separate shapes would eat each other's flux.
+fn ties(settings: &FitSettings, bands: &[&BandModel]) -> Vec<Option<String>> {
+    let line = |b: &BandModel| {
+        let instrument = settings.resolution.as_ref()?.fwhm_aa(b.centre_aa);
+        let plain = matches!(b.form, Form::Lines) && b.structure.is_single() && !b.wings;
+        let auto = b.centre == Freedom::Auto && b.width == Freedom::Auto && b.tie.is_none();
+        let narrow = b.fwhm_aa.is_some_and(|w| w < LINE_PART * instrument);
+        (plain && auto && narrow).then_some(instrument)
+    };
+    let mut order: Vec<usize> = (0..bands.len()).collect();
+    order.sort_by(|a, b| bands[*a].centre_aa.total_cmp(&bands[*b].centre_aa));
+    let mut out: Vec<Option<String>> = bands.iter().map(|b| b.tie.clone()).collect();
+    let lines: Vec<(usize, f64)> = order
+        .into_iter()
+        .filter_map(|i| Some((i, line(bands[i])?)))
+        .collect();
+    for (n, pair) in lines.windows(2).enumerate() {
+        let ((a, fwhm), (b, _)) = (pair[0], pair[1]);
+        if bands[b].centre_aa - bands[a].centre_aa < BLEND_FWHM * fwhm {
+            let word = out[a].clone().unwrap_or_else(|| format!("(blend {n})"));
+            out[a] = Some(word.clone());
+            out[b] = Some(word);
+        }
+    }
+    out
 }
 
 /// Without given errors: fit, take the scatter in the continuum as the error of every sample of the

@@ -15,6 +15,9 @@ const KEEP_FREE_SIGMA: f64 = 5.0;
 /// Fall of χ² for two more shape parameters that frees a weak band's shape all the same: the
 /// chance of a larger fall by noise alone is exp(−9), even after scanning the grid below 1 %.
 const FREE_BY_CHI2: f64 = 18.0;
+/// The same for a band of middling strength, whose shape is better known: by chance in 0.3 %.
+const FREE_MIDDLING_BY_CHI2: f64 = 11.8;
+const MIDDLING_SIGMA: f64 = 8.0;
 /// Largest wing term: beyond it the profile turns negative.
 const MOST_WING: f64 = 0.6;
 /// Temperatures a thermal continuum may take, K.
@@ -38,6 +41,8 @@ pub(super) struct WindowInput<'a> {
     pub thermal: Option<Thermal>,
     pub sampling: Sampling,
     pub bands: Vec<&'a BandModel>,
+    /// Bands with the same word share velocity and width: the user's ties, and blends of lines.
+    pub ties: Vec<Option<String>>,
     pub expected_fwhm_aa: Vec<Option<f64>>,
     pub instrument_fwhm_aa: Vec<Option<f64>>,
     pub free_shape_sigma: f64,
@@ -186,8 +191,13 @@ fn choose_free(
         } else if snr >= NEVER_FREE_SIGMA {
             let mut alone = held.to_vec();
             alone[b] = wish;
+            let least = if snr >= MIDDLING_SIGMA {
+                FREE_MIDDLING_BY_CHI2
+            } else {
+                FREE_BY_CHI2
+            };
             if let Ok(free) = attempt(input, model, &alone, solver)
-                && base.chi2 - free.chi2 > FREE_BY_CHI2
+                && base.chi2 - free.chi2 > least
             {
                 wishes[b] = wish;
             }
@@ -221,12 +231,11 @@ fn hold_the_doubtful(
 }
 
 fn tied_to_stronger(input: &WindowInput<'_>, outcome: &WindowOutcome, b: usize) -> bool {
-    let Some(tie) = &input.bands[b].tie else {
+    let Some(tie) = &input.ties[b] else {
         return false;
     };
     let snr = |i: usize| outcome.flux[i] / outcome.flux_covariance[(i, i)].sqrt();
-    (0..input.bands.len())
-        .any(|i| i != b && input.bands[i].tie.as_ref() == Some(tie) && snr(i) > snr(b))
+    (0..input.bands.len()).any(|i| i != b && input.ties[i].as_ref() == Some(tie) && snr(i) > snr(b))
 }
 
 fn attempt(
@@ -308,11 +317,11 @@ fn lay_out(input: &WindowInput<'_>, wishes: &[Wish]) -> Layout {
     let mut shared: BTreeMap<(&str, bool), usize> = BTreeMap::new();
     let tie_wish = |b: usize| {
         input
-            .bands
+            .ties
             .iter()
             .zip(wishes)
             .fold(wishes[b], |w, (other, wish)| {
-                if other.tie.is_some() && other.tie == input.bands[b].tie {
+                if other.is_some() && *other == input.ties[b] {
                     Wish {
                         centre: w.centre || wish.centre,
                         width: w.width || wish.width,
@@ -331,7 +340,7 @@ fn lay_out(input: &WindowInput<'_>, wishes: &[Wish]) -> Layout {
             if !wanted {
                 return Slot::Held(held);
             }
-            if let Some(tie) = &band.tie
+            if let Some(tie) = &input.ties[b]
                 && let Some(&i) = shared.get(&(tie.as_str(), is_width))
             {
                 return Slot::Fitted(i);
@@ -346,7 +355,7 @@ fn lay_out(input: &WindowInput<'_>, wishes: &[Wish]) -> Layout {
             layout.bounds.push(bounds);
             layout.grid.candidates.push(candidates);
             pair.push(i);
-            if let Some(tie) = &band.tie {
+            if let Some(tie) = &input.ties[b] {
                 shared.insert((tie.as_str(), is_width), i);
             }
             Slot::Fitted(i)
@@ -464,7 +473,9 @@ fn shift_range(input: &WindowInput<'_>, b: usize, fwhm: f64) -> ((f64, f64), Vec
             .bands
             .iter()
             .enumerate()
-            .filter(|(i, o)| *i != b && (o.tie.is_none() || o.tie != band.tie))
+            .filter(|(i, _)| {
+                *i != b && (input.ties[*i].is_none() || input.ties[*i] != input.ties[b])
+            })
             .map(|(_, o)| (o.centre_aa - centre).abs())
             .fold(f64::INFINITY, f64::min);
         let edge = (centre - input.window_aa.0).max(input.window_aa.1 - centre);

@@ -44,7 +44,7 @@ pub(super) fn defaults(plan: &Plan, folder: &Path) -> Plan {
         .basis
         .get_or_insert_with(|| "production".to_owned());
     out.measure.detection_sigma.get_or_insert(3.0);
-    out.measure.free_shape_sigma.get_or_insert(10.0);
+    out.measure.free_shape_sigma.get_or_insert(17.0);
     let coma = &mut out.coma;
     coma.length_set
         .get_or_insert_with(|| DEFAULT_LENGTH_SET.to_owned());

@@ -273,7 +273,7 @@ pub struct MeasurePlan {
     /// Signal-to-noise from which a band counts as detected (default 3).
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub detection_sigma: Option<f64>,
-    /// Signal-to-noise from which centre and width of an "auto" band are fitted (default 10).
+    /// Signal-to-noise from which centre and width of an "auto" band are fitted (default 17).
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub free_shape_sigma: Option<f64>,
     /// Drop samples farther than this many errors from the fit, at most three in a row (default: none
@@ -369,7 +369,8 @@ pub struct BandPlan {
     /// "auto" (default), "free" or "held".
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub width_is: Option<Freedom>,
-    /// Bands with the same word here share velocity and width.
+    /// Bands with the same word here share velocity and width. Lines nearer than 1.5 instrumental widths
+    /// to each other do so without being told, unless centre_is or width_is is given.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub tie: Option<String>,
     /// Number of the spectrum to measure it in (default: the first that covers it).

@@ -57,7 +57,7 @@ impl Checker<'_> {
                 .expect("invariant: default filled in"),
             3.0,
             1e6,
-            "10 keeps weak bands unbiased",
+            "17 keeps weak bands unbiased",
         )
         .map_err(|e| self.file.point(e, &["measure", "free_shape_sigma"]))?;
         Ok(fit)
