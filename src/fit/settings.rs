@@ -68,6 +68,8 @@ pub struct FitSettings {
     /// Chebyshev order of the continuum in every window; `None` chooses 2, or 3 where the window
     /// is wider than 15 % of its wavelength.
     pub continuum_order: Option<usize>,
+    /// Added to the order of every window, given or chosen; never below order 0.
+    pub continuum_order_shift: i32,
     /// If not empty, samples away from every band core are used only inside these ranges, Å.
     pub continuum_ranges_aa: Vec<(f64, f64)>,
     /// Ranges left out, Å.
@@ -87,6 +89,7 @@ impl FitSettings {
             bands,
             resolution: None,
             continuum_order: None,
+            continuum_order_shift: 0,
             continuum_ranges_aa: Vec::new(),
             excluded_aa: Vec::new(),
             sampling: Sampling::Centre,

@@ -354,7 +354,8 @@ impl Picked {
             window_aa: group.window_aa,
             order: settings
                 .continuum_order
-                .unwrap_or_else(|| default_order(group.window_aa)),
+                .unwrap_or_else(|| default_order(group.window_aa))
+                .saturating_add_signed(settings.continuum_order_shift as isize),
             sampling: settings.sampling,
             instrument_fwhm_aa: bands
                 .iter()
