@@ -18,7 +18,7 @@ use crate::ground::{Caveat, Result};
 use crate::ratio::{Interval, Ratio, RatioKind};
 use crate::spectrum::Spectrum;
 use rayon::prelude::*;
-use variants::{Variant, lean, noise_alone, variants};
+use variants::{Variant, lean, noise_alone, pinned, variants};
 use views::{View, compare, total, views};
 
 /// One choice and what comes of it.
@@ -162,11 +162,28 @@ fn row(
         quality: total(&views),
         aicc_difference: compared.and_then(|c| c.aicc),
         bic_difference: compared.and_then(|c| c.bic),
-        f_test: compared.and_then(|c| c.f_test),
+        f_test: compared
+            .and_then(|c| c.f_test)
+            .or_else(|| pinned_test(spectra, base, base_views, variant)),
         same_fit: compared.is_some_and(|c| c.same),
         ratios: found(settings, &analysis, base),
         ..empty
     }
+}
+
+/// The F-test of a continuum order where a higher or lower order changed which shapes are fitted:
+/// with those of the plan the models contain one another.
+fn pinned_test(
+    spectra: &[Spectrum],
+    base: &Analysis,
+    base_views: &[View],
+    variant: &Variant,
+) -> Option<FTest> {
+    if !matches!(variant.choice, Choice::Order(_)) {
+        return None;
+    }
+    let analysis = analyse(spectra, &pinned(&variant.settings, base)).ok()?;
+    compare(base_views, &views(&analysis, Some(base)))?.f_test
 }
 
 /// The plan's ratios as another analysis gives them.

@@ -151,6 +151,19 @@ fn bands_changed(settings: &Settings, change: impl Fn(usize, &mut BandModel)) ->
     out
 }
 
+/// The settings with every shape fitted or held as the plan's own fit did it, so that models which
+/// differ in nothing else contain one another.
+pub(super) fn pinned(settings: &Settings, base: &Analysis) -> Settings {
+    let freedom = |fitted: bool| {
+        if fitted { Freedom::Free } else { Freedom::Held }
+    };
+    bands_changed(settings, |b, band| {
+        let fit = &base.bands[b].fit;
+        band.centre = freedom(fit.centre_sigma_aa.is_some());
+        band.width = freedom(fit.fwhm_sigma_aa.is_some());
+    })
+}
+
 /// The changed settings, if the freedom of any band changed.
 fn differing(before: &Settings, after: Settings) -> Option<Settings> {
     let freedom = |s: &Settings| -> Vec<(Freedom, Freedom)> {
