@@ -6,7 +6,8 @@ use super::marker::{Mark, Shape, arrow};
 use super::panel::{Panel, x_ticks};
 use super::standing::Bounds;
 use super::style::{
-    BLACK, DARK, DOTTED, FAINT, LABEL_PT, LINE_PT, Stroke, TICK_PT, TITLE_PT, Width, series_colour,
+    BLACK, DARK, DOTTED, FAINT, LABEL_PT, LINE_PT, PALE, Stroke, TICK_PT, TITLE_PT, Width,
+    series_colour,
 };
 use super::text::{elide, width_pt, wrap};
 use crate::ground::{Error, Result};
@@ -27,6 +28,8 @@ pub struct AlternativesFigure {
 pub struct AlternativePanel {
     /// Name of the ratio.
     pub ratio: String,
+    /// A narrower interval of the first row, drawn as a darker band.
+    pub inner: Option<Bounds>,
     /// One point per row; none where a choice gives no ratio.
     pub points: Vec<Option<AlternativePoint>>,
 }
@@ -202,6 +205,10 @@ fn draw(canvas: &mut Canvas, panel: &Panel, data: &AlternativePanel) {
         if let Reach::Interval(b) = reference.reach {
             let (low, high) = (edge(panel, b.low), edge(panel, b.high));
             canvas.rectangle((low, panel.top), (high, panel.bottom()), FAINT, 1.0);
+        }
+        if let Some(b) = data.inner {
+            let (low, high) = (edge(panel, b.low), edge(panel, b.high));
+            canvas.rectangle((low, panel.top), (high, panel.bottom()), PALE, 0.7);
         }
         let x = panel.px_inside(reference.value);
         canvas.path(&[(x, panel.top), (x, panel.bottom())], DOTTED);

@@ -359,6 +359,7 @@ pub fn alternatives_figure(
         let points = rows.iter().map(|row| row.ratios[r].and_then(|f| point(&f)));
         AlternativePanel {
             ratio: format!("{}/{}", wanted.of.pretty(), wanted.to.pretty()),
+            inner: noise_bounds(found, r),
             points: points.collect(),
         }
     });
@@ -370,7 +371,7 @@ pub fn alternatives_figure(
     }
     let figure = AlternativesFigure {
         title: format!(
-            "{}: ratios under other choices (grey: 68.3 % interval as planned)",
+            "{}: ratios under other choices (grey: 68.3 % interval as planned; darker: of noise alone)",
             settings.label
         ),
         labels: rows
@@ -380,6 +381,16 @@ pub fn alternatives_figure(
         panels,
     };
     crate::figures::alternatives_svg(&figure, width).map(Some)
+}
+
+/// The planned median with the error bar of noise alone.
+fn noise_bounds(found: &Alternatives, r: usize) -> Option<Bounds> {
+    let median = found.rows[0].ratios[r]?.log10_median()?;
+    let half = found.spreads[r].noise_dex?;
+    Some(Bounds {
+        low: 10f64.powf(median - half),
+        high: 10f64.powf(median + half),
+    })
 }
 
 fn point(found: &Found) -> Option<AlternativePoint> {

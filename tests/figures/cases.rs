@@ -502,6 +502,10 @@ fn point(value: f64, part: f64) -> Option<AlternativePoint> {
 fn alternatives(rows: usize, panels: usize) -> AlternativesFigure {
     let panel = |p: usize| AlternativePanel {
         ratio: format!("C₂H₆/H₂O {p}"),
+        inner: p.is_multiple_of(2).then(|| Bounds {
+            low: 0.9 * 10f64.powi(p as i32 - 3),
+            high: 1.1 * 10f64.powi(p as i32 - 3),
+        }),
         points: (0..rows)
             .map(|i| {
                 let value = 10f64.powi(p as i32 - 3) * (1.0 + 0.3 * noise(i * 7 + p)).abs();
