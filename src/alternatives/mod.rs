@@ -42,6 +42,11 @@ pub struct Row {
     pub failure: Option<String>,
 }
 
+/// An AICc this much worse than the plan's, on the same samples, rules a choice out: such models
+/// have "essentially no support" (Burnham & Anderson 2002, Model Selection and Multimodel
+/// Inference, section 2.6; from memory).
+pub const RULED_OUT_AICC: f64 = 10.0;
+
 /// A ratio under one choice.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Found {
@@ -125,6 +130,12 @@ pub fn alternatives(
 }
 
 impl Row {
+    /// Whether the data rule the choice out, by [`RULED_OUT_AICC`]. Never where the samples differ
+    /// from the plan's.
+    pub fn ruled_out(&self) -> bool {
+        self.aicc_difference.is_some_and(|d| d > RULED_OUT_AICC)
+    }
+
     fn empty(choice: Choice, ratios: usize) -> Self {
         Self {
             choice,

@@ -5,7 +5,8 @@ use crate::analysis::RatioSettings;
 use crate::ground::Caveat;
 use crate::ratio::RatioKind;
 
-/// How much one ratio depends on the choices. All widths are in log10 (dex).
+/// How much one ratio depends on the choices. All widths are in log10 (dex). Choices that the data
+/// rule out count in the full range alone: nobody has to fear a model that does not fit.
 #[derive(Clone, Debug, PartialEq)]
 pub struct RatioSpread {
     /// "CO2/H2O".
@@ -14,10 +15,12 @@ pub struct RatioSpread {
     pub error_bar_dex: Option<f64>,
     /// The same without the errors of calibration, g, scale lengths and speed.
     pub noise_dex: Option<f64>,
-    /// Alternatives that give a value and are not the plan's own fit.
+    /// Alternatives that give a value, are not ruled out and are not the plan's own fit.
     pub alternatives: usize,
     /// Largest minus smallest log10 median, the plan's included.
     pub range_dex: Option<f64>,
+    /// The same with the choices that are ruled out.
+    pub full_range_dex: Option<f64>,
     /// Standard deviation of the log10 medians, the plan's included (divided by their number
     /// minus one).
     pub deviation_dex: Option<f64>,
@@ -35,7 +38,7 @@ pub struct Shift {
 }
 
 impl RatioSpread {
-    /// Whether the choices move the ratio further than its error bar: half of the full range
+    /// Whether the choices move the ratio further than its error bar: half of the range
     /// against half of the 68.3 % interval.
     pub fn exceeds_error_bar(&self) -> bool {
         matches!((self.range_dex, self.error_bar_dex), (Some(r), Some(e)) if 0.5 * r > e)
@@ -62,6 +65,7 @@ pub(super) fn spreads(
                 noise_dex: noise[r].and_then(|f| f.error_bar_dex()),
                 alternatives: 0,
                 range_dex: None,
+                full_range_dex: None,
                 deviation_dex: None,
                 farthest: None,
             };
@@ -79,22 +83,31 @@ fn fill(mut spread: RatioSpread, planned: f64, rows: &[Row], r: usize) -> RatioS
         .filter(|row| !row.same_fit)
         .filter_map(|row| Some((row, row.ratios[r]?.log10_median()? - planned)))
         .collect();
-    if moved.is_empty() {
+    let kept: Vec<(&Row, f64)> = moved.iter().copied().filter(|m| !m.0.ruled_out()).collect();
+    spread.full_range_dex = range(&moved);
+    spread.range_dex = range(&kept);
+    spread.alternatives = kept.len();
+    if kept.is_empty() {
         return spread;
     }
-    let all = || moved.iter().map(|(_, d)| *d).chain([0.0]);
-    let (low, high) = all().fold((0.0f64, 0.0f64), |(l, h), d| (l.min(d), h.max(d)));
-    let mean = all().sum::<f64>() / (moved.len() + 1) as f64;
+    let all = || kept.iter().map(|(_, d)| *d).chain([0.0]);
+    let mean = all().sum::<f64>() / (kept.len() + 1) as f64;
     let squares: f64 = all().map(|d| (d - mean).powi(2)).sum();
-    spread.alternatives = moved.len();
-    spread.range_dex = Some(high - low);
-    spread.deviation_dex = Some((squares / moved.len() as f64).sqrt());
-    let farthest = moved.iter().max_by(|a, b| a.1.abs().total_cmp(&b.1.abs()));
+    spread.deviation_dex = Some((squares / kept.len() as f64).sqrt());
+    let farthest = kept.iter().max_by(|a, b| a.1.abs().total_cmp(&b.1.abs()));
     spread.farthest = farthest.map(|(row, dex)| Shift {
         choice: row.choice.clone(),
         dex: *dex,
     });
     spread
+}
+
+/// Range of moves, no move included.
+fn range(moved: &[(&Row, f64)]) -> Option<f64> {
+    let ends = moved
+        .iter()
+        .fold((0.0f64, 0.0f64), |(l, h), (_, d)| (l.min(*d), h.max(*d)));
+    (!moved.is_empty()).then_some(ends.1 - ends.0)
 }
 
 pub(super) fn caveats(
@@ -131,7 +144,7 @@ fn changed_kind(name: &str, rows: &[Row], r: usize) -> Option<Caveat> {
     let planned = rows[0].ratios[r]?.kind;
     let other: Vec<String> = rows[1..]
         .iter()
-        .filter(|row| row.ratios[r].is_some_and(|f| f.kind != planned))
+        .filter(|row| !row.ruled_out() && row.ratios[r].is_some_and(|f| f.kind != planned))
         .map(|row| format!("“{}”", row.choice))
         .collect();
     let is = match planned {
@@ -198,6 +211,23 @@ mod tests {
         let doubts = caveats(&wanted(), &rows, std::slice::from_ref(spread));
         assert_eq!(doubts.len(), 1);
         assert!(doubts[0].to_string().contains("matter more than the noise"));
+    }
+
+    #[test]
+    fn what_the_data_rule_out_counts_in_the_full_range_alone() {
+        let mut rows = [
+            row(Choice::Planned, 1.0, false),
+            row(Choice::Order(1), 1.05, false),
+            row(Choice::SingleGaussians, 100.0, false),
+        ];
+        rows[2].aicc_difference = Some(10.5);
+        let spread = &spreads(&wanted(), &rows, &rows[0].ratios)[0];
+        assert_eq!(spread.alternatives, 1);
+        assert!(spread.range_dex.expect("a range") < 0.03);
+        assert!((spread.full_range_dex.expect("a range") - 2.0).abs() < 1e-12);
+        assert!(caveats(&wanted(), &rows, std::slice::from_ref(spread)).is_empty());
+        rows[2].aicc_difference = Some(9.5);
+        assert!(spreads(&wanted(), &rows, &rows[0].ratios)[0].exceeds_error_bar());
     }
 
     #[test]

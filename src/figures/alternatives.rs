@@ -6,7 +6,7 @@ use super::marker::{Mark, Shape, arrow};
 use super::panel::{Panel, x_ticks};
 use super::standing::Bounds;
 use super::style::{
-    BLACK, DARK, DOTTED, FAINT, LABEL_PT, LINE_PT, PALE, Stroke, TICK_PT, TITLE_PT, Width,
+    BLACK, DARK, DOTTED, FAINT, LABEL_PT, LINE_PT, PALE, Stroke, TICK_PT, TITLE_PT, WHITE, Width,
     series_colour,
 };
 use super::text::{elide, width_pt, wrap};
@@ -19,6 +19,8 @@ pub struct AlternativesFigure {
     pub title: String,
     /// One label per row, from above.
     pub labels: Vec<String>,
+    /// Rows that the data rule out, drawn without colour; rows beyond its end are not.
+    pub ruled_out: Vec<bool>,
     /// One panel per ratio.
     pub panels: Vec<AlternativePanel>,
 }
@@ -97,7 +99,7 @@ pub fn alternatives_svg(figure: &AlternativesFigure, width: Width) -> Result<Str
             if i % layout.across == 0 {
                 layout.draw_labels(canvas, panel);
             }
-            draw(canvas, panel, data);
+            draw(canvas, panel, data, &figure.ruled_out);
         }
     }))
 }
@@ -200,7 +202,7 @@ fn range(data: &AlternativePanel) -> Result<Axis> {
     Ok(Axis::covering(all, Scale::Log, &what)?.padded(0.07, 0.07))
 }
 
-fn draw(canvas: &mut Canvas, panel: &Panel, data: &AlternativePanel) {
+fn draw(canvas: &mut Canvas, panel: &Panel, data: &AlternativePanel, ruled_out: &[bool]) {
     if let Some(Some(reference)) = data.points.first() {
         if let Reach::Interval(b) = reference.reach {
             let (low, high) = (edge(panel, b.low), edge(panel, b.high));
@@ -216,7 +218,16 @@ fn draw(canvas: &mut Canvas, panel: &Panel, data: &AlternativePanel) {
     for (i, point) in data.points.iter().enumerate() {
         let y = row_y(panel, i);
         match point {
-            Some(point) => draw_point(canvas, panel, point, y, i == 0),
+            Some(point) => {
+                let look = if i == 0 {
+                    Look::Reference
+                } else if ruled_out.get(i) == Some(&true) {
+                    Look::RuledOut
+                } else {
+                    Look::Plain
+                };
+                draw_point(canvas, panel, point, y, look);
+            }
             None => {
                 let p = (panel.left + 4.0, y);
                 canvas.text("–", p, Type::new(TICK_PT, Anchor::Start).colour(DARK));
@@ -246,25 +257,53 @@ fn edge(panel: &Panel, v: f64) -> f64 {
     }
 }
 
-fn draw_point(canvas: &mut Canvas, panel: &Panel, point: &AlternativePoint, y: f64, first: bool) {
+/// How a row is drawn.
+#[derive(Clone, Copy, PartialEq)]
+enum Look {
+    Reference,
+    Plain,
+    RuledOut,
+}
+
+impl Look {
+    fn mark(self) -> Mark {
+        let (shape, colour) = match self {
+            Self::Reference => (Shape::Diamond, BLACK),
+            Self::Plain => (Shape::Circle, series_colour(0)),
+            Self::RuledOut => (Shape::Circle, WHITE),
+        };
+        Mark {
+            shape,
+            filled: true,
+            colour,
+        }
+    }
+
+    fn bar(self) -> Stroke {
+        match self {
+            Self::Reference => Stroke::solid(BLACK, 1.2),
+            Self::Plain => Stroke::solid(BLACK, 0.7),
+            Self::RuledOut => Stroke::solid(BLACK, 0.7).dashed(&[1.5, 1.5]),
+        }
+    }
+
+    fn radius_pt(self) -> f64 {
+        if self == Self::Reference { 2.6 } else { 2.0 }
+    }
+}
+
+fn draw_point(canvas: &mut Canvas, panel: &Panel, point: &AlternativePoint, y: f64, look: Look) {
     let x = panel.px_inside(point.value);
-    let bar = Stroke::solid(BLACK, if first { 1.2 } else { 0.7 });
-    let mut mark = Mark {
-        shape: if first { Shape::Diamond } else { Shape::Circle },
-        filled: true,
-        colour: if first { BLACK } else { series_colour(0) },
-    };
+    let bar = look.bar();
     let to = match point.reach {
         Reach::Interval(b) => {
             canvas.path(&[(edge(panel, b.low), y), (edge(panel, b.high), y)], bar);
-            None
+            look.mark().draw(canvas, (x, y), look.radius_pt());
+            return;
         }
-        Reach::Below => Some((x - ARROW_PT).max(panel.left)),
-        Reach::Above => Some((x + ARROW_PT).min(panel.right())),
+        Reach::Below => (x - ARROW_PT).max(panel.left),
+        Reach::Above => (x + ARROW_PT).min(panel.right()),
     };
-    if let Some(to) = to {
-        arrow(canvas, (x, y), (to, y), bar, 2.6);
-        mark.filled = false;
-    }
-    mark.draw(canvas, (x, y), if first { 2.6 } else { 2.0 });
+    arrow(canvas, (x, y), (to, y), bar, 2.6);
+    canvas.path(&[(x, y - 2.8), (x, y + 2.8)], bar);
 }

@@ -24,8 +24,8 @@ pub fn alternatives_table(found: &Alternatives, settings: &Settings) -> String {
     );
     out.push_str(&criteria_table(&found.rows));
     out.push_str(
-        "\nΔ is the alternative minus the plan: below −10 the data clearly prefer the alternative, above +10 the\n\
-         plan. p is the chance that noise alone makes the larger of the two models look as much better; – where\n\
+        "\nΔ is the alternative minus the plan: below −10 the data clearly prefer the alternative, above +10 (AICc)\n\
+         they rule it out. p is the chance that noise alone makes the larger of the two models look as much better; – where\n\
          neither contains the other or the samples differ.\n",
     );
     for row in found.rows.iter().filter(|r| r.failure.is_some()) {
@@ -39,11 +39,14 @@ pub fn alternatives_table(found: &Alternatives, settings: &Settings) -> String {
         out.push_str(&ratio_table(&found.rows, &names, from..to));
     }
     if !found.spreads.is_empty() {
-        out.push_str("\nIn brackets: shift of log10 in units of the plan's error bar.\n\n");
+        out.push_str(
+            "\nIn brackets: shift of log10 in units of the plan's error bar; × marks what the data rule out.\n\n",
+        );
         out.push_str(&spread_table(&found.spreads));
         out.push_str(
             "\nIn log10 (dex). Error bar: half the 68.3 % interval; noise: the same without calibration, g, scale\n\
-             lengths and speed; range: largest minus smallest median of plan and alternatives.\n",
+             lengths and speed; range: largest minus smallest median of plan and alternatives; full range: with those\n\
+             that the data rule out, which count nowhere else.\n",
         );
     }
     if !found.caveats.is_empty() {
@@ -96,7 +99,8 @@ fn ratio_table(rows: &[Row], names: &[&str], across: std::ops::Range<usize>) -> 
     header.extend(&names[across.clone()]);
     let cells = rows.iter().filter(|r| r.failure.is_none()).map(|row| {
         let ratios = row.ratios[across.clone()].iter();
-        std::iter::once(row.choice.to_string())
+        let mark = if row.ruled_out() { " ×" } else { "" };
+        std::iter::once(format!("{}{mark}", row.choice))
             .chain(ratios.map(|f| value(f.as_ref(), row)))
             .collect()
     });
@@ -132,6 +136,7 @@ fn spread_table(spreads: &[RatioSpread]) -> String {
             s.alternatives.to_string(),
             dex(s.range_dex),
             dex(s.deviation_dex),
+            dex(s.full_range_dex),
             s.farthest.as_ref().map_or_else(
                 || NOTHING.to_owned(),
                 |f| format!("{:+.3} {}", f.dex, f.choice),
@@ -145,6 +150,7 @@ fn spread_table(spreads: &[RatioSpread]) -> String {
         "alternatives",
         "range",
         "std. deviation",
+        "full range",
         "farthest",
     ];
     grid(&header, rows.collect())
@@ -174,6 +180,7 @@ pub fn alternatives_csv(found: &Alternatives, settings: &Settings) -> String {
         "f_dof",
         "f_p",
         "same_fit",
+        "ruled_out",
         "failure",
         "ratio",
         "basis",
@@ -222,6 +229,7 @@ fn head_cells(row: &Row) -> Vec<String> {
         count(row.f_test.map(|t| t.dof)),
         cell(row.f_test.map(|t| t.p)),
         row.same_fit.to_string(),
+        row.ruled_out().to_string(),
         row.failure.clone().unwrap_or_default(),
     ]
 }
@@ -260,6 +268,7 @@ struct ChoiceOut {
     f: Option<f64>,
     f_p: Option<f64>,
     same_fit: bool,
+    ruled_out: bool,
     failure: Option<String>,
     ratios: Vec<Option<RatioOut>>,
 }
@@ -281,6 +290,7 @@ struct SpreadOut<'a> {
     noise_dex: Option<f64>,
     alternatives: usize,
     range_dex: Option<f64>,
+    full_range_dex: Option<f64>,
     deviation_dex: Option<f64>,
     farthest: Option<String>,
     farthest_dex: Option<f64>,
@@ -301,6 +311,7 @@ pub fn alternatives_json(found: &Alternatives, settings: &Settings) -> String {
         noise_dex: s.noise_dex,
         alternatives: s.alternatives,
         range_dex: s.range_dex,
+        full_range_dex: s.full_range_dex,
         deviation_dex: s.deviation_dex,
         farthest: s.farthest.as_ref().map(|f| f.choice.to_string()),
         farthest_dex: s.farthest.as_ref().map(|f| f.dex),
@@ -340,6 +351,7 @@ fn choice_out(row: &Row) -> ChoiceOut {
         f: row.f_test.map(|t| t.f),
         f_p: row.f_test.map(|t| t.p),
         same_fit: row.same_fit,
+        ruled_out: row.ruled_out(),
         failure: row.failure.clone(),
         ratios: row.ratios.iter().map(|f| f.as_ref().map(ratio)).collect(),
     }
@@ -371,13 +383,14 @@ pub fn alternatives_figure(
     }
     let figure = AlternativesFigure {
         title: format!(
-            "{}: ratios under other choices (grey: 68.3 % interval as planned; darker: of noise alone)",
+            "{}: ratios under other choices (grey: 68.3 % interval as planned; darker: of noise alone; white: ruled out by the data)",
             settings.label
         ),
         labels: rows
             .iter()
             .map(|r| r.choice.to_string().replace(" -", " −"))
             .collect(),
+        ruled_out: rows.iter().map(|r| r.ruled_out()).collect(),
         panels,
     };
     crate::figures::alternatives_svg(&figure, width).map(Some)
