@@ -98,6 +98,10 @@ fn demos_need_every_band_and_no_other_order() {
             "{up}"
         );
         assert_eq!(base["fits"].as_array().unwrap().len(), windows);
+        // A band alone in its window may be left unused; a worse continuum may not be chosen.
+        let down = choice(&found, "continuum order -1");
+        let worse = number(down, "aicc_difference") > 10.0;
+        assert_eq!(down["ruled_out"].as_bool(), Some(worse), "{down}");
         let narrower = choice(&found, "windows 20 % narrower");
         assert!(narrower["aicc_difference"].is_null() && narrower["f_p"].is_null());
         assert!(number(narrower, "samples") < number(planned, "samples"));
@@ -203,6 +207,11 @@ fn a_blend_is_measured_with_and_without_each_component() {
         .collect();
     assert_eq!(there, [false, true, false]);
     assert!(no_co2["f_p"].as_f64().unwrap() < 1e-10, "{no_co2}");
+    // In a blend a missing component spoils its neighbour; alone in a window it does not.
+    assert_eq!(no_co2["ruled_out"], true);
+    let no_co = choice(&found, "without CO-4.67um");
+    assert_eq!(no_co["ruled_out"], false);
+    assert_eq!(no_co["ratios"][0]["shift_sigma"], 0.0);
 }
 
 #[test]
@@ -305,4 +314,38 @@ fn an_envelope_is_compared_with_one_gaussian() {
     let shift = |c: &Value| c["ratios"][0]["median"].as_f64().expect("a median");
     let change = shift(single) / shift(choice(&found, "as planned"));
     assert!((change - 1.0).abs() < 0.1, "{change}");
+}
+
+#[test]
+fn of_many_bands_only_the_strongest_are_left_out() {
+    let dir = tempfile::tempdir().unwrap();
+    let mut bands = String::new();
+    let mut names = String::new();
+    for i in 0..45 {
+        let centre = 4250 + 20 * i;
+        bands.push_str(&format!(
+            "[[band]]\nid = \"line {i}\"\ncentre = {centre}\nwindow = [{}, {}]\nfwhm = 2.0\n\
+             unit = \"Angstrom\"\nmedium = \"air\"\n\n",
+            centre - 30,
+            centre + 30
+        ));
+        names.push_str(&format!(", \"line {i}\""));
+    }
+    let changes = [
+        ("\"C2-4737\", \"C2-5165\"", "\"C2-5165\""),
+        ("[\"C2/CN\", \"C3/CN\"", "[\"C3/CN\""),
+        ("\"C2-5165\"]", &format!("\"C2-5165\"{names}]")),
+        ("[measure]", &format!("{bands}[measure]")),
+    ];
+    let plan = changed(dir.path(), "optical.toml", &changes);
+    let out = dir.path().join("out");
+    let text = good(&measure(&plan, &out, &["--alternatives"]));
+    let found = json(&out, "alternatives.json");
+    let all = found["choices"].as_array().unwrap();
+    let without = all
+        .iter()
+        .filter(|c| c["choice"].as_str().unwrap().starts_with("without"));
+    assert_eq!(without.count(), 40);
+    choice(&found, "without CN-3883");
+    assert!(text.contains("only the 40 strongest of 50 bands"), "{text}");
 }

@@ -14,7 +14,7 @@ pub use summary::{RatioSpread, Shift};
 pub use variants::{Choice, MOST_REMOVALS};
 
 use crate::analysis::{Analysis, BandSettings, RatioSettings, Settings, analyse};
-use crate::ground::{Caveat, Result};
+use crate::ground::{Caveat, Measured, Result, Species};
 use crate::ratio::{Interval, Ratio, RatioKind};
 use crate::spectrum::Spectrum;
 use rayon::prelude::*;
@@ -36,6 +36,9 @@ pub struct Row {
     pub f_test: Option<FTest>,
     /// True when the fit is the plan's own, because the choice changes nothing.
     pub same_fit: bool,
+    /// Whether the data rule the choice out, by [`RULED_OUT_AICC`]. Never where the samples differ
+    /// from the plan's, nor where a window is left unused together with its only band.
+    pub ruled_out: bool,
     /// The ratios in the order of the plan; `None` where this choice gives none.
     pub ratios: Vec<Option<Found>>,
     /// Why there is no result.
@@ -58,6 +61,8 @@ pub struct Found {
     pub limit: Option<f64>,
     /// log10 of the median over the plan's median, in units of the plan's error bar in log10.
     pub shift_sigma: Option<f64>,
+    /// True when no flux that the ratio stands on has changed.
+    pub unchanged: bool,
 }
 
 /// All choices.
@@ -108,7 +113,7 @@ pub fn alternatives(
         })
         .collect();
     let rows: Vec<Row> = std::iter::once(planned).chain(others).collect();
-    let noise = found(settings, &noise, base);
+    let noise = found(settings, &noise, &noise);
     let spreads = summary::spreads(&settings.ratios, &rows, &noise);
     let mut caveats = summary::caveats(&settings.ratios, &rows, &spreads);
     let not_left_out = settings.bands.len().saturating_sub(MOST_REMOVALS);
@@ -130,12 +135,6 @@ pub fn alternatives(
 }
 
 impl Row {
-    /// Whether the data rule the choice out, by [`RULED_OUT_AICC`]. Never where the samples differ
-    /// from the plan's.
-    pub fn ruled_out(&self) -> bool {
-        self.aicc_difference.is_some_and(|d| d > RULED_OUT_AICC)
-    }
-
     fn empty(choice: Choice, ratios: usize) -> Self {
         Self {
             choice,
@@ -144,6 +143,7 @@ impl Row {
             bic_difference: None,
             f_test: None,
             same_fit: false,
+            ruled_out: false,
             ratios: vec![None; ratios],
             failure: None,
         }
@@ -177,9 +177,17 @@ fn row(
             .and_then(|c| c.f_test)
             .or_else(|| pinned_test(spectra, base, base_views, variant)),
         same_fit: compared.is_some_and(|c| c.same),
+        ruled_out: windows(&analysis) == windows(base)
+            && compared
+                .and_then(|c| c.aicc)
+                .is_some_and(|d| d > RULED_OUT_AICC),
         ratios: found(settings, &analysis, base),
         ..empty
     }
+}
+
+fn windows(analysis: &Analysis) -> usize {
+    analysis.fits.iter().map(|(_, f)| f.windows.len()).sum()
 }
 
 /// The F-test of a continuum order where a higher or lower order changed which shapes are fitted:
@@ -207,15 +215,42 @@ fn found(settings: &Settings, analysis: &Analysis, base: &Analysis) -> Vec<Optio
             interval: r.interval,
             limit: r.limit,
             shift_sigma: None,
+            unchanged: false,
         })
     };
     let shifted = |wanted| {
         let mut found = of(analysis, wanted)?;
         let planned = of(base, wanted);
+        if let Some(planned) = planned
+            && same_fluxes(&fluxes(analysis, wanted), &fluxes(base, wanted))
+        {
+            // Other random draws would give a little other numbers.
+            found = planned;
+            found.unchanged = true;
+        }
         found.shift_sigma = planned.and_then(|p| shift(&p, &found));
         Some(found)
     };
     settings.ratios.iter().map(shifted).collect()
+}
+
+/// The fluxes that a ratio stands on: identifier, value and error.
+fn fluxes<'a>(analysis: &'a Analysis, ratio: &RatioSettings) -> Vec<(&'a str, Measured)> {
+    let stands = |s: &Species| *s == ratio.of || *s == ratio.to;
+    analysis
+        .bands
+        .iter()
+        .filter(|b| b.efficiency.is_some() && b.species.as_ref().is_some_and(stands))
+        .map(|b| (b.fit.id.as_str(), b.fit.flux_erg_s_cm2))
+        .collect()
+}
+
+fn same_fluxes(a: &[(&str, Measured)], b: &[(&str, Measured)]) -> bool {
+    let near = |x: f64, y: f64, sigma: f64| (x - y).abs() <= 1e-6 * sigma;
+    let same = |((i, x), (j, y)): (&(&str, Measured), &(&str, Measured))| {
+        i == j && near(x.value, y.value, x.sigma) && near(x.sigma, y.sigma, x.sigma)
+    };
+    a.len() == b.len() && a.iter().zip(b).all(same)
 }
 
 fn shift(planned: &Found, found: &Found) -> Option<f64> {

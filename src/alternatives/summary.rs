@@ -15,7 +15,7 @@ pub struct RatioSpread {
     pub error_bar_dex: Option<f64>,
     /// The same without the errors of calibration, g, scale lengths and speed.
     pub noise_dex: Option<f64>,
-    /// Alternatives that give a value, are not ruled out and are not the plan's own fit.
+    /// Alternatives that give a value, are not ruled out and change a flux of the ratio.
     pub alternatives: usize,
     /// Largest minus smallest log10 median, the plan's included.
     pub range_dex: Option<f64>,
@@ -80,10 +80,10 @@ pub(super) fn spreads(
 fn fill(mut spread: RatioSpread, planned: f64, rows: &[Row], r: usize) -> RatioSpread {
     let moved: Vec<(&Row, f64)> = rows[1..]
         .iter()
-        .filter(|row| !row.same_fit)
-        .filter_map(|row| Some((row, row.ratios[r]?.log10_median()? - planned)))
+        .filter_map(|row| Some((row, row.ratios[r].filter(|f| !f.unchanged)?)))
+        .filter_map(|(row, f)| Some((row, f.log10_median()? - planned)))
         .collect();
-    let kept: Vec<(&Row, f64)> = moved.iter().copied().filter(|m| !m.0.ruled_out()).collect();
+    let kept: Vec<(&Row, f64)> = moved.iter().copied().filter(|m| !m.0.ruled_out).collect();
     spread.full_range_dex = range(&moved);
     spread.range_dex = range(&kept);
     spread.alternatives = kept.len();
@@ -144,7 +144,7 @@ fn changed_kind(name: &str, rows: &[Row], r: usize) -> Option<Caveat> {
     let planned = rows[0].ratios[r]?.kind;
     let other: Vec<String> = rows[1..]
         .iter()
-        .filter(|row| !row.ruled_out() && row.ratios[r].is_some_and(|f| f.kind != planned))
+        .filter(|row| !row.ruled_out && row.ratios[r].is_some_and(|f| f.kind != planned))
         .map(|row| format!("“{}”", row.choice))
         .collect();
     let is = match planned {
@@ -165,7 +165,7 @@ mod tests {
     use crate::ground::Species;
     use crate::ratio::{Basis, Interval};
 
-    fn row(choice: Choice, median: f64, same_fit: bool) -> Row {
+    fn row(choice: Choice, median: f64, unchanged: bool) -> Row {
         let interval = Interval {
             median,
             low68: median / 1.1,
@@ -174,12 +174,12 @@ mod tests {
             high95: median * 1.3,
         };
         Row {
-            same_fit,
             ratios: vec![Some(Found {
                 kind: RatioKind::Value,
                 interval: Some(interval),
                 limit: None,
                 shift_sigma: None,
+                unchanged,
             })],
             ..Row::empty(choice, 1)
         }
@@ -195,7 +195,7 @@ mod tests {
     }
 
     #[test]
-    fn range_and_deviation_leave_out_the_same_fit() {
+    fn range_and_deviation_leave_out_what_changes_nothing() {
         let rows = [
             row(Choice::Planned, 1.0, false),
             row(Choice::Order(1), 10.0, false),
@@ -220,13 +220,13 @@ mod tests {
             row(Choice::Order(1), 1.05, false),
             row(Choice::SingleGaussians, 100.0, false),
         ];
-        rows[2].aicc_difference = Some(10.5);
+        rows[2].ruled_out = true;
         let spread = &spreads(&wanted(), &rows, &rows[0].ratios)[0];
         assert_eq!(spread.alternatives, 1);
         assert!(spread.range_dex.expect("a range") < 0.03);
         assert!((spread.full_range_dex.expect("a range") - 2.0).abs() < 1e-12);
         assert!(caveats(&wanted(), &rows, std::slice::from_ref(spread)).is_empty());
-        rows[2].aicc_difference = Some(9.5);
+        rows[2].ruled_out = false;
         assert!(spreads(&wanted(), &rows, &rows[0].ratios)[0].exceeds_error_bar());
     }
 

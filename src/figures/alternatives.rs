@@ -17,6 +17,8 @@ use crate::ground::{Error, Result};
 pub struct AlternativesFigure {
     /// Heading; empty for none.
     pub title: String,
+    /// Explanation under the heading; empty for none.
+    pub note: String,
     /// One label per row, from above.
     pub labels: Vec<String>,
     /// Rows that the data rule out, drawn without colour; rows beyond its end are not.
@@ -95,6 +97,10 @@ pub fn alternatives_svg(figure: &AlternativesFigure, width: Width) -> Result<Str
     let bottom = panels.iter().map(Panel::bottom).fold(0.0, f64::max) + 2.0 * LINE_PT;
     Ok(page(width.points(), bottom, |canvas| {
         canvas.heading(&layout.title, (EDGE_PT, EDGE_PT));
+        for (i, line) in layout.note.iter().enumerate() {
+            let y = EDGE_PT + layout.heading_pt() + (i as f64 + 0.5) * LINE_PT;
+            canvas.text(line, (EDGE_PT, y), Type::new(TICK_PT, Anchor::Start));
+        }
         for (i, (panel, data)) in panels.iter().zip(&figure.panels).enumerate() {
             if i % layout.across == 0 {
                 layout.draw_labels(canvas, panel);
@@ -106,6 +112,7 @@ pub fn alternatives_svg(figure: &AlternativesFigure, width: Width) -> Result<Str
 
 struct Layout {
     title: Vec<String>,
+    note: Vec<String>,
     labels: Vec<String>,
     left: f64,
     across: usize,
@@ -131,6 +138,7 @@ impl Layout {
         let across = count.div_ceil(lines);
         Self {
             title: wrap(&figure.title, TITLE_PT, true, page - 2.0 * EDGE_PT, 2),
+            note: wrap(&figure.note, TICK_PT, false, page - 2.0 * EDGE_PT, 3),
             left,
             across,
             panel_pt: (room - BETWEEN_PT * (across - 1) as f64) / across as f64,
@@ -139,8 +147,13 @@ impl Layout {
         }
     }
 
+    fn heading_pt(&self) -> f64 {
+        self.title.len() as f64 * (LINE_PT + 1.0)
+    }
+
     fn place(&self, figure: &AlternativesFigure) -> Result<Vec<Panel>> {
-        let first = 2.0 * EDGE_PT + self.title.len() as f64 * (LINE_PT + 1.0) + LINE_PT + 2.0;
+        let note_pt = self.note.len() as f64 * LINE_PT;
+        let first = 2.0 * EDGE_PT + self.heading_pt() + note_pt + LINE_PT + 2.0;
         let pitch = self.height_pt + 3.0 * LINE_PT + 8.0;
         figure
             .panels

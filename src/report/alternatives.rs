@@ -24,9 +24,9 @@ pub fn alternatives_table(found: &Alternatives, settings: &Settings) -> String {
     );
     out.push_str(&criteria_table(&found.rows));
     out.push_str(
-        "\nΔ is the alternative minus the plan: below −10 the data clearly prefer the alternative, above +10 (AICc)\n\
-         they rule it out. p is the chance that noise alone makes the larger of the two models look as much better; – where\n\
-         neither contains the other or the samples differ.\n",
+        "\nΔ is the alternative minus the plan: below −10 the data clearly prefer the alternative, above +10 in\n\
+         AICc they rule it out. p is the chance that noise alone makes the larger of the two models look as much\n\
+         better. – where the samples differ or neither model contains the other.\n",
     );
     for row in found.rows.iter().filter(|r| r.failure.is_some()) {
         let why = row.failure.as_deref().unwrap_or_default();
@@ -40,7 +40,8 @@ pub fn alternatives_table(found: &Alternatives, settings: &Settings) -> String {
     }
     if !found.spreads.is_empty() {
         out.push_str(
-            "\nIn brackets: shift of log10 in units of the plan's error bar; × marks what the data rule out.\n\n",
+            "\nIn brackets: shift of log10 in units of the plan's error bar; × marks what the data rule out.\n\
+             A band alone in its window can always be left unused.\n\n",
         );
         out.push_str(&spread_table(&found.spreads));
         out.push_str(
@@ -99,7 +100,7 @@ fn ratio_table(rows: &[Row], names: &[&str], across: std::ops::Range<usize>) -> 
     header.extend(&names[across.clone()]);
     let cells = rows.iter().filter(|r| r.failure.is_none()).map(|row| {
         let ratios = row.ratios[across.clone()].iter();
-        let mark = if row.ruled_out() { " ×" } else { "" };
+        let mark = if row.ruled_out { " ×" } else { "" };
         std::iter::once(format!("{}{mark}", row.choice))
             .chain(ratios.map(|f| value(f.as_ref(), row)))
             .collect()
@@ -114,6 +115,7 @@ fn value(found: Option<&Found>, row: &Row) -> String {
     let limit = || found.limit.map_or_else(String::new, plain);
     match (found.kind, found.interval) {
         (RatioKind::Value, Some(i)) if row.choice == Choice::Planned => plain(i.median),
+        _ if found.unchanged && row.choice != Choice::Planned => "same".to_owned(),
         (RatioKind::Value, Some(i)) => match found.shift_sigma {
             Some(s) => format!("{} ({s:+.1})", plain(i.median)),
             None => plain(i.median),
@@ -229,7 +231,7 @@ fn head_cells(row: &Row) -> Vec<String> {
         count(row.f_test.map(|t| t.dof)),
         cell(row.f_test.map(|t| t.p)),
         row.same_fit.to_string(),
-        row.ruled_out().to_string(),
+        row.ruled_out.to_string(),
         row.failure.clone().unwrap_or_default(),
     ]
 }
@@ -351,7 +353,7 @@ fn choice_out(row: &Row) -> ChoiceOut {
         f: row.f_test.map(|t| t.f),
         f_p: row.f_test.map(|t| t.p),
         same_fit: row.same_fit,
-        ruled_out: row.ruled_out(),
+        ruled_out: row.ruled_out,
         failure: row.failure.clone(),
         ratios: row.ratios.iter().map(|f| f.as_ref().map(ratio)).collect(),
     }
@@ -382,15 +384,14 @@ pub fn alternatives_figure(
         return Ok(None);
     }
     let figure = AlternativesFigure {
-        title: format!(
-            "{}: ratios under other choices (grey: 68.3 % interval as planned; darker: of noise alone; white: ruled out by the data)",
-            settings.label
-        ),
+        title: format!("{}: ratios under other choices", settings.label),
+        note: "Grey: 68.3 % interval as planned, darker: of noise alone. White points: ruled out by the data."
+            .to_owned(),
         labels: rows
             .iter()
             .map(|r| r.choice.to_string().replace(" -", " −"))
             .collect(),
-        ruled_out: rows.iter().map(|r| r.ruled_out()).collect(),
+        ruled_out: rows.iter().map(|r| r.ruled_out).collect(),
         panels,
     };
     crate::figures::alternatives_svg(&figure, width).map(Some)

@@ -522,6 +522,8 @@ fn alternatives(rows: usize, panels: usize) -> AlternativesFigure {
     };
     AlternativesFigure {
         title: "X/2031 D1 (invented): ratios under other choices".to_owned(),
+        note: "White points: ruled out, with an explanation that takes more than one line of a column."
+            .to_owned(),
         labels: (0..rows)
             .map(|i| format!("without band number {i}"))
             .collect(),
