@@ -322,12 +322,12 @@ fn of_many_bands_only_the_strongest_are_left_out() {
     let mut bands = String::new();
     let mut names = String::new();
     for i in 0..45 {
-        let centre = 4250 + 20 * i;
+        let centre = 4250 + 15 * i;
         bands.push_str(&format!(
             "[[band]]\nid = \"line {i}\"\ncentre = {centre}\nwindow = [{}, {}]\nfwhm = 2.0\n\
              unit = \"Angstrom\"\nmedium = \"air\"\n\n",
-            centre - 30,
-            centre + 30
+            centre - 7,
+            centre + 7
         ));
         names.push_str(&format!(", \"line {i}\""));
     }
