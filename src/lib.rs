@@ -11,6 +11,7 @@
 //! Inside, wavelengths are vacuum Å and fluxes are cgs (erg s⁻¹ cm⁻²); units are converted once, in
 //! the readers. Every dimensional field carries its unit as a suffix.
 
+pub mod alternatives;
 pub mod analysis;
 pub mod atomic;
 pub mod cli;

@@ -1,6 +1,6 @@
 //! `comagauge measure`: read, override, check, run, write.
 
-use super::output;
+use super::{alternatives, output};
 use crate::analysis::{Analysis, Settings, analyse};
 use crate::figures::Width;
 use crate::ground::{Error, Result};
@@ -40,6 +40,10 @@ pub(super) struct Measure {
     /// Print the summary as CSV.
     #[arg(long)]
     csv: bool,
+    /// Repeat the analysis with other continuum orders, windows, shapes and bands, and say how far
+    /// each ratio moves; writes alternatives.csv, .json and .svg beside the results.
+    #[arg(long)]
+    alternatives: bool,
 }
 
 const EXAMPLE: &str = "\
@@ -108,6 +112,14 @@ impl Measure {
         } else {
             report::summary_table(&analysis, &checked.settings)
         })?;
+        if self.alternatives {
+            let extra = alternatives::listed_in_windows(&mut file, &tables, &analysis);
+            let settings = &checked.settings;
+            let table = alternatives::run(&folder, &spectra, settings, &analysis, &extra)?;
+            if !self.csv {
+                output::print(&format!("\n{table}"))?;
+            }
+        }
         output::complain(&format!("results in {}", folder.display()));
         Ok(())
     }

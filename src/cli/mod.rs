@@ -3,6 +3,7 @@
 //! Imports every floor. Results go to stdout, everything else to stderr; a closed pipe is a normal
 //! end.
 
+mod alternatives;
 mod bands;
 mod compare;
 mod describe;

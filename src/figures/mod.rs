@@ -7,6 +7,7 @@
 //! Every figure comes in the two widths of a journal page ([`Width`]); type is 7–8 pt at that size.
 //! Series differ by dash pattern, marker shape and grey level as well as by colour.
 
+mod alternatives;
 mod axis;
 mod canvas;
 mod coverage;
@@ -25,6 +26,9 @@ mod style;
 mod text;
 mod thin;
 
+pub use alternatives::{
+    AlternativePanel, AlternativePoint, AlternativesFigure, Reach, alternatives_svg,
+};
 pub use axis::Scale;
 pub use coverage::{CoverageFigure, CoveragePoint, CoverageRow, coverage_svg};
 pub use curve::{Curve, CurveFigure, Tick, VerticalMark, range_svg};

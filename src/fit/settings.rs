@@ -119,6 +119,8 @@ pub struct ContinuumModel {
     /// Chebyshev order; `None` chooses 2, or 3 where the window is wider than 15 % of its wavelength,
     /// one less on a carrier.
     pub order: Option<usize>,
+    /// Added to the order of every window, given or chosen; never below order 0.
+    pub order_shift: i32,
     /// What the polynomial multiplies; nothing means 1.
     pub carrier: Option<Arc<Carrier>>,
     /// Thermal emission of dust.

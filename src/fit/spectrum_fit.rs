@@ -104,7 +104,9 @@ fn order_of(settings: &FitSettings, window_aa: (f64, f64)) -> usize {
     let relative = (window_aa.1 - window_aa.0) / (0.5 * (window_aa.1 + window_aa.0));
     let default = if relative > 0.15 { 3 } else { 2 };
     let on_carrier = usize::from(settings.continuum.carrier.is_some());
-    settings.continuum.order.unwrap_or(default - on_carrier)
+    let order = settings.continuum.order.unwrap_or(default - on_carrier);
+    let shift = isize::try_from(settings.continuum.order_shift).unwrap_or(0);
+    order.saturating_add_signed(shift)
 }
 
 /// A window after its fit, before the results are put into cgs.

@@ -27,7 +27,8 @@ pub struct Recovered {
     /// Median error quoted by the trials, unit of the truth: σ of a flux, half the 68.3 % interval of
     /// a ratio.
     pub typical_sigma: f64,
-    /// Mean of (value − truth), in units of the typical error, with its own error σ/√n.
+    /// Mean of (value − truth), in units of the typical error, with its own error σ/√n; for a ratio,
+    /// whose mean its noisy denominator pulls up, the median, with 1.253 σ/√n.
     pub bias_sigma: Measured,
     /// Standard deviation of the pulls (value − truth)/σ, with the σ of each trial.
     pub pull_scatter: f64,
@@ -132,13 +133,17 @@ fn row(name: String, quantity: Quantity, truth: f64, estimates: &[Estimate]) -> 
         .iter()
         .map(|e| (e.value - truth) / typical_sigma)
         .collect();
-    let (bias, scatter) = mean_and_scatter(&off);
+    let (mean, scatter) = mean_and_scatter(&off);
+    let (bias, bias_error) = match quantity {
+        Quantity::Flux => (mean, scatter / n.sqrt()),
+        Quantity::Ratio => (median(off), MEDIAN_ERROR * scatter / n.sqrt()),
+    };
     Recovered {
         name,
         quantity,
         truth,
         typical_sigma,
-        bias_sigma: Measured::new(bias, scatter / n.sqrt()),
+        bias_sigma: Measured::new(bias, bias_error),
         pull_scatter: mean_and_scatter(&pulls).1,
         coverage68: Share::count(estimates.iter().map(|e| e.inside68)),
         coverage95: Share::count(estimates.iter().map(|e| e.inside95)),
@@ -146,6 +151,17 @@ fn row(name: String, quantity: Quantity, truth: f64, estimates: &[Estimate]) -> 
         limit_wrong: Share { count: 0, of: 0 },
         pulls,
     }
+}
+
+/// √(π/2): error of a median over that of a mean, for normal values.
+const MEDIAN_ERROR: f64 = 1.253_314_137_315_500_3;
+
+fn median(mut values: Vec<f64>) -> f64 {
+    if values.is_empty() {
+        return f64::NAN;
+    }
+    values.sort_by(f64::total_cmp);
+    quantile(&values, 0.5)
 }
 
 /// Mean and sample standard deviation; NaN where there are too few values.

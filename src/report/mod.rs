@@ -3,6 +3,7 @@
 //! Imports floors 0–7. Returns strings; only [`write_all`] touches the disk, by writing beside the
 //! target and renaming, so that an interrupted run leaves no half file.
 
+mod alternatives;
 mod comparison_figures;
 mod comparison_table;
 mod comparison_text;
@@ -14,6 +15,9 @@ mod simulated;
 mod table;
 mod write;
 
+pub use alternatives::{
+    alternatives_csv, alternatives_figure, alternatives_json, alternatives_table,
+};
 pub use comparison_figures::{comparison_distance_figure, comparison_standing_figure};
 pub use comparison_table::{check_set_table, comparison_csv};
 pub use comparison_text::comparison_text;

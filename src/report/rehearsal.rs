@@ -29,7 +29,7 @@ pub fn rehearsal_table(rehearsed: &Rehearsed, label: &str) -> String {
     ));
     out.push_str(
         "\nCoverage in % with 95.4 % binomial (Wilson) bounds; * marks bounds that miss the nominal share.\n\
-         Bias is mean(value − truth) over the median error; fluxes in erg/s/cm².\n",
+         Bias is mean(value − truth), of ratios the median, over the median error; fluxes in erg/s/cm².\n",
     );
     out.push_str(intervals_are(rehearsed));
     let missed = |r: &Recovered| r.quantity == Quantity::Ratio && r.detected.count < r.detected.of;

@@ -486,5 +486,72 @@ pub fn all_cases() -> Vec<Case> {
     all.extend(standing_cases());
     all.extend(curve_cases());
     all.extend(quicklook_cases());
+    all.extend(alternatives_cases());
     all
+}
+
+fn point(value: f64, part: f64) -> Option<AlternativePoint> {
+    let reach = Reach::Interval(Bounds {
+        low: value * (1.0 - part),
+        high: value * (1.0 + part),
+    });
+    Some(AlternativePoint { value, reach })
+}
+
+/// So many rows and panels with values, limits, gaps and bars that reach zero.
+fn alternatives(rows: usize, panels: usize) -> AlternativesFigure {
+    let panel = |p: usize| AlternativePanel {
+        ratio: format!("C₂H₆/H₂O {p}"),
+        inner: p.is_multiple_of(2).then(|| Bounds {
+            low: 0.9 * 10f64.powi(p as i32 - 3),
+            high: 1.1 * 10f64.powi(p as i32 - 3),
+        }),
+        points: (0..rows)
+            .map(|i| {
+                let value = 10f64.powi(p as i32 - 3) * (1.0 + 0.3 * noise(i * 7 + p)).abs();
+                let limit = |reach| Some(AlternativePoint { value, reach });
+                match (i * 3 + p) % 11 {
+                    4 => limit(Reach::Below),
+                    7 => limit(Reach::Above),
+                    9 => None,
+                    10 => point(value, 1.2),
+                    _ => point(value, 0.2),
+                }
+            })
+            .collect(),
+    };
+    AlternativesFigure {
+        title: "X/2031 D1 (invented): ratios under other choices".to_owned(),
+        note: "White points: ruled out, with an explanation that takes more than one line of a column."
+            .to_owned(),
+        labels: (0..rows)
+            .map(|i| format!("without band number {i}"))
+            .collect(),
+        ruled_out: (0..rows / 2).map(|i| i.is_multiple_of(4)).collect(),
+        panels: (0..panels).map(panel).collect(),
+    }
+}
+
+fn alternatives_cases() -> Vec<Case> {
+    let mut hard = alternatives(3, 2);
+    hard.labels[1] =
+        "without a band that somebody gave an absurdly long identifier \u{7} <&>".into();
+    hard.panels[0].points = vec![point(1e-12, 0.1), point(1e12, 5.0), None];
+    hard.panels[1].points = vec![None, point(0.5, f64::NAN), point(0.5, f64::INFINITY)];
+    vec![
+        case(
+            "alternatives",
+            &["C₂H₆/H₂O 0", "without band number 11"],
+            |w| alternatives_svg(&alternatives(12, 3), w),
+        ),
+        case("alternatives, one", &["C₂H₆/H₂O 0"], |w| {
+            alternatives_svg(&alternatives(1, 1), w)
+        }),
+        case("alternatives, many", &["C₂H₆/H₂O 6"], |w| {
+            alternatives_svg(&alternatives(50, 7), w)
+        }),
+        case("alternatives, hard", &["C₂H₆/H₂O 1"], move |w| {
+            alternatives_svg(&hard, w)
+        }),
+    ]
 }
