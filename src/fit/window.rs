@@ -184,7 +184,7 @@ fn choose_free(
         if wish == held[b] {
             continue;
         }
-        let snr = base.flux[b] / base.flux_covariance[(b, b)].sqrt();
+        let snr = group_snr(input, base, b);
         let unknown = input.expected_fwhm_aa[b].is_none();
         if snr >= input.free_shape_sigma || unknown {
             wishes[b] = wish;
@@ -204,6 +204,20 @@ fn choose_free(
         }
     }
     wishes
+}
+
+/// Signal-to-noise of a band, or of the sum of those that share its shape: the noise of the sum has
+/// little to do with the noise of their ratio, so that choosing by it does not bias the ratio.
+fn group_snr(input: &WindowInput<'_>, outcome: &WindowOutcome, b: usize) -> f64 {
+    let members: Vec<usize> = (0..input.bands.len())
+        .filter(|i| *i == b || (input.ties[b].is_some() && input.ties[*i] == input.ties[b]))
+        .collect();
+    let flux: f64 = members.iter().map(|i| outcome.flux[*i]).sum();
+    let pairs = members
+        .iter()
+        .flat_map(|i| members.iter().map(move |j| (*i, *j)));
+    let variance: f64 = pairs.map(|p| outcome.flux_covariance[p]).sum();
+    flux / variance.sqrt()
 }
 
 /// Automatic shapes that ended on a bound or lost their signal go back to the expected shape.
