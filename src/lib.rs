@@ -13,6 +13,7 @@
 
 pub mod analysis;
 pub mod atomic;
+pub mod by_line;
 pub mod cli;
 pub mod coma;
 pub mod comparison;

@@ -4,6 +4,7 @@
 //! Imports floors 0–3. Never drops, clips or smooths a sample on its own, and never adds a component.
 
 mod basis;
+mod by_line;
 mod detect;
 mod model;
 mod noise;
@@ -15,6 +16,7 @@ mod start;
 mod structure;
 mod window;
 
+pub use by_line::{Feature, Features, features};
 pub use detect::upper_limit;
 pub use model::WindowModel;
 pub use profile::Sampling;

@@ -100,6 +100,7 @@ impl Checker<'_> {
             model,
             species,
             efficiency,
+            lines: None,
         })
     }
 

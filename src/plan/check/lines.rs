@@ -4,12 +4,13 @@
 use super::Checker;
 use super::convert::range_aa;
 use crate::analysis::{BandSettings, EfficiencyAtComet};
-use crate::atomic;
+use crate::atomic::{self, LineKind};
+use crate::by_line::LineSet;
 use crate::coma::equilibrium::{Conditions, Equilibrium, LineG, SolarField};
 use crate::fit::{BandModel, Freedom, Structure};
 use crate::frame::Geometry;
 use crate::ground::constants::HC_ERG_AA;
-use crate::ground::{Error, Result, Species};
+use crate::ground::{Error, Medium, Result, Species, WavelengthUnit};
 use crate::plan::schema::LinesPlan;
 use std::path::Path;
 
@@ -34,10 +35,16 @@ impl Checker<'_> {
         for (i, lines) in plan.lines.iter().enumerate() {
             let index = i.to_string();
             let species = Species::new(&lines.species);
-            let system = atomic::atom(&species, dir)
-                .map_err(|e| self.file.point(e, &["lines", &index, "species"]))?;
+            let system = if species.as_str() == "CN" {
+                atomic::cn_violet(dir)
+            } else {
+                atomic::atom(&species, dir)
+            }
+            .map_err(|e| self.file.point(e, &["lines", &index, "species"]))?;
             let equilibrium = Equilibrium::solve(&system, &field, &at)?;
             self.caveats.extend(equilibrium.caveats().iter().cloned());
+            let transit_s = self.transit_s(geometry)?;
+            self.caveats.extend(equilibrium.slow_for(transit_s));
             out.extend(self.groups_of(lines, &species, equilibrium.lines(), &["lines", &index])?);
         }
         Ok(out)
@@ -76,19 +83,24 @@ impl Checker<'_> {
                 .point(Error::plan("windows is empty"), &at("windows")));
         }
         let (unit, medium) = self.axis_or(lines.unit.as_ref(), lines.medium.as_ref(), keys)?;
-        let without: Vec<f64> = lines
-            .without
-            .iter()
-            .map(|w| unit.vacuum_aa(*w, medium))
-            .collect();
+        let axis = PlanAxis { unit, medium };
         let windows = lines
             .windows
             .iter()
             .map(|w| range_aa(*w, unit, medium).map_err(|e| self.file.point(e, &at("windows"))))
             .collect::<Result<Vec<_>>>()?;
+        let without = lines
+            .without
+            .iter()
+            .map(|w| {
+                left_out(*w, axis, all, &windows)
+                    .map_err(|why| self.file.point(why, &at("without")))
+            })
+            .collect::<Result<Vec<_>>>()?;
         let inside = |l: &LineG, (low, high): (f64, f64)| {
             let x = l.wavelength_vacuum_aa;
-            low < x && x < high && !without.iter().any(|w| (w - x).abs() < SAME_LINE_AA)
+            let seen = !matches!(l.kind, LineKind::Pump | LineKind::Rovibrational);
+            seen && low < x && x < high && !without.iter().any(|w| (w - x).abs() < SAME_LINE_AA)
         };
         let strongest = all
             .iter()
@@ -114,14 +126,63 @@ impl Checker<'_> {
                         &at("windows"),
                     ));
                 }
-                group(species, *window, &chosen)
+                group(species, *window, &chosen, axis, lines.robust.unwrap_or(false))
             })
             .collect()
     }
 }
 
+/// Unit and medium in which a `[[lines]]` table gives wavelengths.
+#[derive(Clone, Copy)]
+struct PlanAxis {
+    unit: WavelengthUnit,
+    medium: Medium,
+}
+
+/// Vacuum wavelength of an entry of `without`, which must be that of a line in one of the windows.
+fn left_out(
+    named: f64,
+    axis: PlanAxis,
+    all: &[LineG],
+    windows: &[(f64, f64)],
+) -> std::result::Result<f64, Error> {
+    let wanted = axis.unit.vacuum_aa(named, axis.medium);
+    let inside = |l: &&LineG| {
+        let x = l.wavelength_vacuum_aa;
+        l.g_erg_s > 0.0 && windows.iter().any(|(low, high)| *low < x && x < *high)
+    };
+    let off = |l: &LineG| (l.wavelength_vacuum_aa - wanted).abs();
+    let nearest = all
+        .iter()
+        .filter(inside)
+        .min_by(|a, b| off(a).total_cmp(&off(b)));
+    match nearest {
+        Some(line) if off(line) < SAME_LINE_AA => Ok(wanted),
+        Some(line) => {
+            let other = axis
+                .unit
+                .from_vacuum_aa(line.wavelength_vacuum_aa, axis.medium);
+            Err(Error::plan(format!(
+                "without = {named} matches no line in the windows within {SAME_LINE_AA} Å"
+            ))
+            .remedy(format!(
+                "the nearest line is at {other:.3}; copy wavelengths from a caveat or from lines.csv, and mind unit and medium"
+            )))
+        }
+        None => Err(Error::plan(format!(
+            "without = {named} matches no line: the windows hold none"
+        ))),
+    }
+}
+
 /// The lines of one window as one band: relative fluxes fixed by g, one column.
-fn group(species: &Species, window_aa: (f64, f64), lines: &[&LineG]) -> Result<BandSettings> {
+fn group(
+    species: &Species,
+    window_aa: (f64, f64),
+    lines: &[&LineG],
+    axis: PlanAxis,
+    robust: bool,
+) -> Result<BandSettings> {
     let pairs: Vec<(f64, f64)> = lines
         .iter()
         .map(|l| (l.wavelength_vacuum_aa, l.g_erg_s))
@@ -160,5 +221,16 @@ fn group(species: &Species, window_aa: (f64, f64), lines: &[&LineG]) -> Result<B
         spectrum: None,
         opacity_cm2: None,
         structured_fwhm_aa: None,
+        lines: Some(LineSet {
+            lines: lines.iter().map(|l| (*l).clone()).collect(),
+            in_plan: lines
+                .iter()
+                .map(|l| {
+                    axis.unit
+                        .from_vacuum_aa(l.wavelength_vacuum_aa, axis.medium)
+                })
+                .collect(),
+            robust,
+        }),
     })
 }

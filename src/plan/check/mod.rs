@@ -7,6 +7,7 @@ mod continuum;
 mod convert;
 mod efficiency;
 mod geometry;
+mod lifetimes;
 mod lines;
 mod ratios;
 mod shape;
@@ -111,6 +112,7 @@ impl Checker<'_> {
         let bands = self.bands(&geometry)?;
         let ratios = self.ratios(&bands)?;
         let species = self.species(&bands, &ratios, &geometry)?;
+        self.note_lifetimes(&bands, &ratios, &geometry)?;
         let coma = &self.plan.coma;
         let speed_sigma = number_in(
             "speed_sigma",
