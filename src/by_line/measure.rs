@@ -64,6 +64,9 @@ pub struct LineResult {
     pub others: f64,
     /// True when that is more than 0.3.
     pub blend: bool,
+    /// True when its feature is free of foreign light, or no feature of the species is, so that it
+    /// counts in the means.
+    pub counts: bool,
     /// True when it does not belong to the common column.
     pub discordant: bool,
     /// Weight of its feature in the robust mean.
@@ -213,15 +216,13 @@ fn one_species(species: &Species, judged: &[Judged<'_>], aperture_cm2: f64) -> B
     };
     let mut lines: Vec<LineResult> = (0..judged.len())
         .flat_map(|j| {
-            let may_judge = enough && used.contains(&j);
-            table_lines(
-                j,
-                &judged[j],
-                &robust,
-                weight_of(j),
-                may_judge,
-                aperture_cm2,
-            )
+            let counts = used.contains(&j);
+            let standing = Standing {
+                counts,
+                may_judge: enough && counts,
+                weight: weight_of(j),
+            };
+            table_lines(j, &judged[j], &robust, &standing, aperture_cm2)
         })
         .collect();
     lines.sort_by(|a, b| {
@@ -250,13 +251,19 @@ fn one_species(species: &Species, judged: &[Judged<'_>], aperture_cm2: f64) -> B
     }
 }
 
+/// What a feature means for the species.
+struct Standing {
+    counts: bool,
+    may_judge: bool,
+    weight: f64,
+}
+
 /// The lines of one feature: they share its flux by g and its column.
 fn table_lines(
     number: usize,
     judged: &Judged<'_>,
     robust: &Mean,
-    weight: f64,
-    may_judge: bool,
+    standing: &Standing,
     aperture_cm2: f64,
 ) -> Vec<LineResult> {
     let (feature, set) = (judged.feature, judged.group.set);
@@ -272,7 +279,6 @@ fn table_lines(
         .map(|(&l, &others)| {
             let share = set.lines[l].g_erg_s / g_sum;
             let flux = feature.flux_erg_s_cm2;
-            let blend = judged.blend || others > BLEND;
             LineResult {
                 band: judged.group.id.to_owned(),
                 line: set.lines[l].clone(),
@@ -283,9 +289,10 @@ fn table_lines(
                 pull,
                 column_cm2: Measured::new(judged.column.value, sigma),
                 others,
-                blend,
-                discordant: may_judge && !blend && pull.abs() > DISCORDANT * robust.scale,
-                weight,
+                blend: judged.blend || others > BLEND,
+                counts: standing.counts,
+                discordant: standing.may_judge && pull.abs() > DISCORDANT * robust.scale,
+                weight: standing.weight,
             }
         })
         .collect()

@@ -169,7 +169,7 @@ pub fn excitation_figure(
     let figure = ExcitationFigure {
         title: heading(settings),
         x_label: "Energy of the upper level (eV)".to_owned(),
-        y_label: "Column of the line / common".to_owned(),
+        y_label: "N(line) / N(mean)".to_owned(),
         panels,
     };
     excitation_svg(&figure, width).map(Some)
@@ -189,7 +189,7 @@ fn panel(s: &ByLine) -> Option<ExcitationPanel> {
             x: l.line.upper_cm1 * ev_per_cm1,
             ratio: l.column_cm2.value / common,
             sigma: l.column_cm2.sigma / common,
-            blend: l.blend,
+            blend: !l.counts,
             discordant: l.discordant,
             label: format!("{:.2} Å", l.line.wavelength_air_aa),
         })
@@ -198,10 +198,10 @@ fn panel(s: &ByLine) -> Option<ExcitationPanel> {
     let blends = points.iter().filter(|p| p.blend).count();
     let mut remark = format!("{} lines", points.len());
     if blends > 0 {
-        remark += &format!(", {blends} of them blends (open)");
+        remark += &format!(" ({blends} blended, open)");
     }
     if left > 0 {
-        remark += &format!("; {left} weaker ones not drawn");
+        remark += &format!(", {left} too weak to draw");
     }
     (!points.is_empty()).then(|| ExcitationPanel {
         name: s.species.pretty(),

@@ -97,39 +97,63 @@ impl Checker<'_> {
                     .map_err(|why| self.file.point(why, &at("without")))
             })
             .collect::<Result<Vec<_>>>()?;
-        let inside = |l: &LineG, (low, high): (f64, f64)| {
-            let x = l.wavelength_vacuum_aa;
-            let seen = !matches!(l.kind, LineKind::Pump | LineKind::Rovibrational);
-            seen && low < x && x < high && !without.iter().any(|w| (w - x).abs() < SAME_LINE_AA)
-        };
-        let strongest = all
-            .iter()
-            .filter(|l| windows.iter().any(|w| inside(l, *w)))
-            .map(|l| l.g_erg_s)
-            .fold(0.0, f64::max);
-        windows
-            .iter()
-            .map(|window| {
-                let chosen: Vec<&LineG> = all
-                    .iter()
-                    .filter(|l| {
-                        inside(l, *window) && l.g_erg_s > 0.0 && l.g_erg_s >= threshold * strongest
-                    })
-                    .collect();
-                if chosen.is_empty() {
-                    return Err(self.file.point(
-                        Error::plan(format!(
-                            "{species}: no line above the threshold between {:.2} and {:.2} Å (vacuum)",
-                            window.0, window.1
-                        ))
-                        .remedy("leave the window out or lower threshold"),
-                        &at("windows"),
-                    ));
-                }
-                group(species, *window, &chosen, axis, lines.robust.unwrap_or(false))
-            })
-            .collect()
+        let faintest = threshold * strongest(all, &windows);
+        let robust = lines.robust.unwrap_or(false);
+        let mut out = Vec::new();
+        for window in &windows {
+            let bright: Vec<&LineG> = all
+                .iter()
+                .filter(|l| shines_in(l, *window) && l.g_erg_s >= faintest)
+                .collect();
+            let kept: Vec<&LineG> = bright
+                .iter()
+                .copied()
+                .filter(|l| !is_named(l, &without))
+                .collect();
+            if bright.is_empty() {
+                return Err(self.file.point(
+                    Error::plan(format!(
+                        "{species}: no line above the threshold between {:.2} and {:.2} Å (vacuum)",
+                        window.0, window.1
+                    ))
+                    .remedy("leave the window out or lower threshold"),
+                    &at("windows"),
+                ));
+            }
+            // A window whose only lines are to be left out goes with them.
+            if !kept.is_empty() {
+                out.push(group(species, *window, &kept, axis, robust)?);
+            }
+        }
+        if out.is_empty() {
+            return Err(self.file.point(
+                Error::plan(format!("{species}: without leaves no line to measure")),
+                &at("without"),
+            ));
+        }
+        Ok(out)
     }
+}
+
+/// A line of the species, with light of its own, inside a window.
+fn shines_in(line: &LineG, (low, high): (f64, f64)) -> bool {
+    let x = line.wavelength_vacuum_aa;
+    let seen = !matches!(line.kind, LineKind::Pump | LineKind::Rovibrational);
+    seen && line.g_erg_s > 0.0 && low < x && x < high
+}
+
+fn is_named(line: &LineG, without_aa: &[f64]) -> bool {
+    let off = |w: &f64| (w - line.wavelength_vacuum_aa).abs();
+    without_aa.iter().any(|w| off(w) < SAME_LINE_AA)
+}
+
+/// Power of the strongest line in the windows, whether it is left out or not: leaving it out must not
+/// bring in fainter ones.
+fn strongest(all: &[LineG], windows: &[(f64, f64)]) -> f64 {
+    all.iter()
+        .filter(|l| windows.iter().any(|w| shines_in(l, *w)))
+        .map(|l| l.g_erg_s)
+        .fold(0.0, f64::max)
 }
 
 /// Unit and medium in which a `[[lines]]` table gives wavelengths.
@@ -147,14 +171,10 @@ fn left_out(
     windows: &[(f64, f64)],
 ) -> std::result::Result<f64, Error> {
     let wanted = axis.unit.vacuum_aa(named, axis.medium);
-    let inside = |l: &&LineG| {
-        let x = l.wavelength_vacuum_aa;
-        l.g_erg_s > 0.0 && windows.iter().any(|(low, high)| *low < x && x < *high)
-    };
     let off = |l: &LineG| (l.wavelength_vacuum_aa - wanted).abs();
     let nearest = all
         .iter()
-        .filter(inside)
+        .filter(|l| windows.iter().any(|w| shines_in(l, *w)))
         .min_by(|a, b| off(a).total_cmp(&off(b)));
     match nearest {
         Some(line) if off(line) < SAME_LINE_AA => Ok(wanted),
