@@ -180,8 +180,8 @@ fn populations_and_energy_are_conserved_everywhere() {
         .collect();
     systems.push(cn_violet(None).unwrap());
     for system in &systems {
-        for heliocentric_au in [0.3, 1.0, 6.0] {
-            for heliocentric_km_s in [-60.0, 0.0, 17.0, 60.0] {
+        for heliocentric_au in [0.3, 0.6, 1.0, 1.7, 3.0, 6.0] {
+            for heliocentric_km_s in [-60.0, -33.0, -10.0, -1.0, 0.0, 5.0, 17.0, 42.0, 60.0] {
                 let there = at(heliocentric_au, heliocentric_km_s);
                 let solved = Equilibrium::solve(system, &field, &there).unwrap();
                 let x = solved.populations();
