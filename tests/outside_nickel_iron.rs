@@ -144,8 +144,12 @@ threshold = 0.18
 }
 
 fn measured(seed: u32, extra: [&str; 2]) -> Value {
+    run(&plan(seed, extra))
+}
+
+fn run(plan: &str) -> Value {
     let dir = tempfile::tempdir().unwrap();
-    std::fs::write(dir.path().join("plan.toml"), plan(seed, extra)).unwrap();
+    std::fs::write(dir.path().join("plan.toml"), plan).unwrap();
     let done = Command::new(env!("CARGO_BIN_EXE_comagauge"))
         .arg("measure")
         .arg(dir.path().join("plan.toml"))
@@ -249,4 +253,35 @@ fn the_plain_mean_says_what_is_wrong_and_its_advice_helps() {
         assert!((log - truth.log_ratio).abs() < f64::min(0.05, 2.0 * sigma));
         assert!(sigma < with_sigma);
     }
+}
+
+#[test]
+fn lifetimes_are_named_where_they_part_columns_from_rates() {
+    let caveat = |plan: &str| {
+        let result = run(plan);
+        let caveats = result["caveats"].as_array().unwrap().iter();
+        let mut texts = caveats.filter(|c| c["code"] == "column-not-production");
+        texts.next().map(|c| c["text"].as_str().unwrap().to_owned())
+    };
+    let far = plan(1, ["robust = true"; 2]);
+    assert_eq!(caveat(&far), None);
+    let near = far
+        .replace("heliocentric_au = 3.0", "heliocentric_au = 0.6")
+        .replace("width_arcsec = 0.5", "width_arcsec = 60.0")
+        .replace("length_arcsec = 8.0", "length_arcsec = 60.0");
+    let text = caveat(&near).unwrap();
+    // Lifetimes at 0.6 au from the default rates of the line lists, quiet Sun.
+    let rates = rows(&Path::new(env!("CARGO_MANIFEST_DIR")).join("line-lists/photo_rates.csv"));
+    let iron = rows_of(&rates, "Fe I");
+    let fastest = iron.iter().copied().fold(0.0, f64::max);
+    assert!(
+        text.contains(&format!("Fe I after {:.1e} s", 0.36 / fastest)),
+        "{text}"
+    );
+}
+
+/// Quiet-Sun rates of a species.
+fn rows_of(rates: &[csv::StringRecord], species: &str) -> Vec<f64> {
+    let own = rates.iter().filter(|r| &r[0] == species);
+    own.map(|r| r[2].parse().unwrap()).collect()
 }

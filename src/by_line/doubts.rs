@@ -5,6 +5,8 @@ use crate::ground::Caveat;
 
 /// Most lines named in one caveat.
 const MOST_NAMED: usize = 8;
+/// Where more than one line in this many is discordant, the lines are not to blame.
+const MOST_SHARE: usize = 3;
 /// Factor on the error from which the scatter is worth a word.
 const WORTH_SAYING: f64 = 1.05;
 
@@ -25,6 +27,18 @@ fn discordant(found: &ByLine, caveats: &mut Vec<Caveat>) {
         }
     }
     if named.is_empty() {
+        return;
+    }
+    if named.len() * MOST_SHARE > found.features {
+        caveats.push(Caveat::Other {
+            code: "line-discordant",
+            text: format!(
+                "{}: {} of its {} lines do not belong to one column: not single lines but the conditions, the resolution or the identification are in doubt; see lines.csv",
+                found.species,
+                named.len(),
+                found.features
+            ),
+        });
         return;
     }
     named.sort_by(|a, b| b.pull.abs().total_cmp(&a.pull.abs()));

@@ -24,6 +24,8 @@ pub struct LineSet {
     pub in_plan: Arc<[f64]>,
     /// Whether the species' column is the robust mean of its lines.
     pub robust: bool,
+    /// True where errors of g weigh the lines but are not drawn: in rehearsals, whose trials share g.
+    pub g_is_exact: bool,
 }
 
 /// One band with its lines, ready to be measured line by line.
@@ -234,7 +236,11 @@ fn one_species(species: &Species, judged: &[Judged<'_>], aperture_cm2: f64) -> B
         block: judged[*j].group.block,
         feature: judged[*j].place,
         molecules_per_flux: judged[*j].molecules_per_flux,
-        g_sigma: judged[*j].column.g_relative_sigma,
+        g_sigma: if judged[*j].group.set.g_is_exact {
+            0.0
+        } else {
+            judged[*j].column.g_relative_sigma
+        },
         weight: *weight,
     });
     ByLine {
@@ -326,6 +332,7 @@ mod tests {
             lines: (0..5).map(|i| line(3600.0 + i as f64, g[i])).collect(),
             in_plan: (0..5).map(|i| 3599.0 + i as f64).collect(),
             robust,
+            g_is_exact: false,
         };
         let species = Species::new("Fe I");
         let group = Group {

@@ -347,3 +347,58 @@ fn normal(rng: &mut Xoshiro256PlusPlus) -> f64 {
 fn factor(sigma: f64, rng: &mut Xoshiro256PlusPlus) -> f64 {
     (sigma * normal(rng)).exp()
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn plan(weights: Option<Vec<f64>>, error_factor: f64) -> SpeciesPlan {
+        let share = |band| BandShare {
+            block: 0,
+            band,
+            molecules_per_flux: 2.0,
+            g_sigma: 0.0,
+        };
+        SpeciesPlan {
+            species: Species::new("Fe I"),
+            bands: vec![share(0), share(1)],
+            weights,
+            error_factor,
+            lifetimes: None,
+        }
+    }
+
+    fn drawn(plan: SpeciesPlan) -> (Measured, f64) {
+        let block = FluxBlock {
+            flux_erg_s_cm2: vec![10.0, 12.0],
+            covariance: DMatrix::from_diagonal_element(2, 2, 1.0),
+            calibration_sigma: 0.0,
+        };
+        let settings = DrawSettings {
+            count: 40_000,
+            seed: 3,
+        };
+        let draws = draw(&[block], &[plan], 0.0, settings).unwrap();
+        let column = draws.molecule_draws.column(0);
+        let mean = column.mean().unwrap();
+        let variance = column.iter().map(|m| (m - mean).powi(2)).sum::<f64>() / 39_999.0;
+        (draws.molecules[0], variance.sqrt())
+    }
+
+    #[test]
+    fn scatter_multiplies_the_error_and_leaves_the_value() {
+        // Equal weights: 2 × 11 ± 2/√2.
+        let (plain, spread) = drawn(plan(None, 1.0));
+        assert!((plain.value - 22.0).abs() < 1e-12 && (spread / 2f64.sqrt() - 1.0).abs() < 0.02);
+        let (wide, spread) = drawn(plan(None, 3.0));
+        assert!((wide.value - 22.0).abs() < 1e-12);
+        assert!((wide.sigma / plain.sigma - 3.0).abs() < 1e-12);
+        assert!((spread / wide.sigma - 1.0).abs() < 0.02);
+    }
+
+    #[test]
+    fn given_weights_are_used() {
+        let (found, _) = drawn(plan(Some(vec![1.0, 0.0]), 1.0));
+        assert!((found.value - 20.0).abs() < 1e-12 && (found.sigma - 2.0).abs() < 1e-12);
+    }
+}

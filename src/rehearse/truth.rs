@@ -84,6 +84,9 @@ fn for_trials(settings: &Settings, how: Rehearsal) -> Settings {
     for g in out.bands.iter_mut().filter_map(|b| b.efficiency.as_mut()) {
         g.relative_sigma = 0.0;
     }
+    for set in out.bands.iter_mut().filter_map(|b| b.lines.as_mut()) {
+        set.g_is_exact = true;
+    }
     for coma in out.species.iter_mut().filter_map(|s| s.coma.as_mut()) {
         coma.length_sigma = 0.0;
     }

@@ -251,6 +251,7 @@ fn group(
                 })
                 .collect(),
             robust,
+            g_is_exact: false,
         }),
     })
 }
