@@ -184,29 +184,23 @@ fn draw_head(canvas: &mut Canvas, panel: &Panel, content: &ExcitationPanel) {
 
 fn draw_point(canvas: &mut Canvas, panel: &Panel, p: &ExcitationPoint, series: usize) {
     let at = place(panel, p);
-    let end = |v: f64| {
+    let inside = |v: f64| {
         if v > 0.0 {
-            panel.py_inside(v)
+            panel.py(v).clamp(cap(panel), panel.bottom())
         } else {
             panel.bottom()
         }
     };
     let colour = if p.discordant { BLACK } else { MIDDLE };
     let bar = [
-        (at.0, end(p.ratio - p.sigma)),
-        (at.0, end(p.ratio + p.sigma)),
+        (at.0, inside(p.ratio - p.sigma)),
+        (at.0, inside(p.ratio + p.sigma)),
     ];
     canvas.path(&bar, Stroke::solid(colour, 0.5));
-    let beyond = panel.y.fraction(p.ratio);
-    if !(0.0..=1.0).contains(&beyond) {
-        let inward = if beyond > 1.0 { 8.0 } else { -8.0 };
-        arrow(
-            canvas,
-            (at.0, at.1 + inward),
-            at,
-            Stroke::solid(BLACK, 0.8),
-            3.0,
-        );
+    let (above, below) = (panel.py(p.ratio) < at.1, panel.py(p.ratio) > at.1);
+    if above || below || p.ratio <= 0.0 {
+        let from = if above { at.1 + 8.0 } else { at.1 - 8.0 };
+        arrow(canvas, (at.0, from), at, Stroke::solid(BLACK, 0.8), 3.0);
         return;
     }
     let mark = Mark {
@@ -225,8 +219,19 @@ fn draw_point(canvas: &mut Canvas, panel: &Panel, p: &ExcitationPoint, series: u
     mark.draw(canvas, at, if p.discordant { 3.2 } else { MARK_PT });
 }
 
+/// Ordinate on the page under the room for the panel's name.
+fn cap(panel: &Panel) -> f64 {
+    panel.top + HEAD * panel.height
+}
+
+/// Where a point is drawn: at the edge when it lies beyond.
 fn place(panel: &Panel, p: &ExcitationPoint) -> Point {
-    (panel.px_inside(p.x), panel.py_inside(p.ratio))
+    let y = if p.ratio > 0.0 {
+        panel.py(p.ratio)
+    } else {
+        panel.bottom()
+    };
+    (panel.px_inside(p.x), y.clamp(cap(panel), panel.bottom()))
 }
 
 /// Names of discordant lines beside their crosses, where they touch neither each other nor a mark.

@@ -41,8 +41,8 @@ pub struct Features {
 }
 
 /// Measures the lines of the bands `wanted` (indices into the fit's bands): in every window one
-/// weighted linear fit of the residuals with a polynomial of the continuum's order times the
-/// continuum, one amplitude per other band, and one per feature. Errors are those of the samples;
+/// weighted linear fit of the residuals with changes of the continuum (its order kept), one amplitude
+/// per other band, and one per feature. Errors are those of the samples;
 /// errors of the fitted velocity and width are not in them.
 ///
 /// # Errors
@@ -144,19 +144,19 @@ impl<'a> Window<'a> {
         Ok(Features { list, covariance })
     }
 
-    /// The fitted continuum times Chebyshev polynomials; the polynomials alone where it is not
-    /// positive throughout.
+    /// Ways in which the continuum may change: Chebyshev polynomials where it is one itself, else
+    /// the continuum times them.
     fn continuum_columns(&self) -> Vec<Vec<f64>> {
-        let positive = self.continuum.iter().all(|c| *c > 0.0);
         let order = self.window.continuum_order;
         let basis: Vec<Vec<f64>> = self
             .x_aa
             .iter()
             .map(|x| chebyshev(to_unit_interval(*x, self.window.window_aa), order))
             .collect();
+        let plain = is_in(&self.continuum, &basis);
         (0..=order)
             .map(|k| {
-                let shape = |i: usize| if positive { self.continuum[i] } else { 1.0 };
+                let shape = |i: usize| if plain { 1.0 } else { self.continuum[i] };
                 let one = |i: usize| basis[i][k] * shape(i) * self.weight[i];
                 (0..self.x_aa.len()).map(one).collect()
             })
@@ -257,6 +257,21 @@ impl<'a> Window<'a> {
             }),
         ))
     }
+}
+
+/// Whether values are a sum of the basis functions (rows: samples), within rounding.
+fn is_in(values: &[f64], basis: &[Vec<f64>]) -> bool {
+    let Some(functions) = basis.first().map(Vec::len) else {
+        return true;
+    };
+    if values.len() < functions {
+        return true;
+    }
+    let matrix = DMatrix::from_fn(values.len(), functions, |i, k| basis[i][k]);
+    let wanted = DVector::from_column_slice(values);
+    let qr = matrix.clone().qr();
+    let solved = qr.r().solve_upper_triangular(&qr.q().tr_mul(&wanted));
+    solved.is_none_or(|c| (matrix * c - &wanted).norm() <= 1e-8 * wanted.norm())
 }
 
 /// Pixel edges half-way to the neighbours.
