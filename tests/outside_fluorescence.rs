@@ -172,6 +172,24 @@ fn a_blackbody_gives_boltzmann() {
 }
 
 #[test]
+fn a_blackbody_gives_boltzmann_for_cn_within_its_wavelengths() {
+    // Its line wavelengths are tabulated apart from its levels, which limits the balance.
+    let system = cn_violet(None).unwrap();
+    let temperature_k = 5000.0;
+    let field = SolarField::planck(temperature_k).unwrap();
+    let solved = Equilibrium::solve(&system, &field, &Conditions::UNIT).unwrap();
+    let ground = solved.populations()[0] / system.levels()[0].weight;
+    let hc_over_k = comagauge::ground::constants::HC_OVER_K_CM_K;
+    let mut worst = 0.0_f64;
+    for (x, level) in solved.populations().iter().zip(system.levels()) {
+        let boltzmann = (-hc_over_k * level.energy_cm1 / temperature_k).exp();
+        worst = worst.max((x / level.weight / ground / boltzmann - 1.0).abs());
+    }
+    println!("CN: worst departure from Boltzmann {worst:.1e}");
+    assert!(worst < 1e-3, "{worst:e}");
+}
+
+#[test]
 fn populations_and_energy_are_conserved_everywhere() {
     let field = sunlight();
     let mut systems: Vec<LevelSystem> = bundled_atoms()
