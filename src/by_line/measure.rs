@@ -1,6 +1,7 @@
 //! Columns of single lines and of the species.
 
 use super::combine::{Column, Mean, plain_mean, robust_mean};
+use crate::atomic::LineKind;
 use crate::coma::equilibrium::LineG;
 use crate::coma::molecules_per_flux;
 use crate::fit::{Feature, Features};
@@ -204,7 +205,12 @@ fn one_species(species: &Species, judged: &[Judged<'_>], aperture_cm2: f64) -> B
         clean
     };
     let columns: Vec<Column> = used.iter().map(|j| judged[*j].column).collect();
-    let (plain, robust) = (plain_mean(&columns), robust_mean(&columns));
+    let (mut plain, mut robust) = (plain_mean(&columns), robust_mean(&columns));
+    if judged.iter().any(|j| is_molecular(j.group)) {
+        for mean in [&mut plain, &mut robust] {
+            widen(mean, &columns);
+        }
+    }
     let is_robust = judged.iter().any(|j| j.group.set.robust);
     let chi2 = if is_robust {
         robust.reduced_chi2
@@ -257,6 +263,19 @@ fn one_species(species: &Species, judged: &[Judged<'_>], aperture_cm2: f64) -> B
     }
 }
 
+fn is_molecular(group: &Group<'_>) -> bool {
+    let band = |l: &LineG| matches!(l.kind, LineKind::Band { .. });
+    group.set.lines.iter().any(band)
+}
+
+/// Lines of a molecular band are wrong together: their mean is no better known than one of them.
+fn widen(mean: &mut Mean, columns: &[Column]) {
+    let weighted = columns.iter().zip(&mean.weights);
+    let common: f64 = weighted.map(|(c, w)| w * c.g_relative_sigma).sum();
+    let column = &mut mean.column;
+    column.sigma = column.sigma.hypot(common * column.value.abs());
+}
+
 /// What a feature means for the species.
 struct Standing {
     counts: bool,
@@ -307,7 +326,6 @@ fn table_lines(
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::atomic::LineKind;
     use nalgebra::DMatrix;
 
     fn line(aa: f64, g_erg_s: f64) -> LineG {

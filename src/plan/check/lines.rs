@@ -99,6 +99,15 @@ impl Checker<'_> {
             .collect::<Result<Vec<_>>>()?;
         let faintest = threshold * strongest(all, &windows);
         let robust = lines.robust.unwrap_or(false);
+        if robust && all.iter().any(|l| matches!(l.kind, LineKind::Band { .. })) {
+            return Err(self.file.point(
+                Error::plan(format!(
+                    "robust = true is for atoms: the errors of the lines of {species} are common, and no mean of them is better than one"
+                ))
+                .remedy("remove it; lines.csv names lines that disagree, and without leaves them out"),
+                &at("robust"),
+            ));
+        }
         let mut out = Vec::new();
         for window in &windows {
             let bright: Vec<&LineG> = all
@@ -209,10 +218,16 @@ fn group(
         .collect();
     let (centre_aa, structure) = Structure::of_lines(&pairs)?;
     let g_erg_s: f64 = lines.iter().map(|l| l.g_erg_s).sum();
-    let squares: f64 = lines
+    // Errors of atomic lines are independent, those of the lines of one molecular band common.
+    let molecular = lines
         .iter()
-        .map(|l| (l.g_erg_s * l.relative_sigma).powi(2))
-        .sum();
+        .any(|l| matches!(l.kind, LineKind::Band { .. }));
+    let sigma: f64 = if molecular {
+        lines.iter().map(|l| l.g_erg_s * l.relative_sigma).sum()
+    } else {
+        let squares = lines.iter().map(|l| (l.g_erg_s * l.relative_sigma).powi(2));
+        squares.sum::<f64>().sqrt()
+    };
     let mut sources: Vec<&str> = lines.iter().map(|l| &*l.source).collect();
     sources.sort_unstable();
     sources.dedup();
@@ -231,7 +246,7 @@ fn group(
         efficiency: Some(EfficiencyAtComet {
             // Photons at the mean wavelength that carry the lines' energy.
             g_photons_s: g_erg_s * centre_aa / HC_ERG_AA,
-            relative_sigma: squares.sqrt() / g_erg_s,
+            relative_sigma: sigma / g_erg_s,
             source: format!(
                 "equilibrium of {} lines: {}",
                 lines.len(),
