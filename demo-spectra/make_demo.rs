@@ -4,6 +4,8 @@
 //! geometry to band fluxes, Gaussian bands on a continuum of reflected sunlight and heat, Gaussian
 //! noise with a fixed seed. README.md beside this file holds the truth.
 
+mod nearuv;
+
 use comagauge::coma::{ApertureKm, Lengths};
 use comagauge::forward::{band_flux_erg_s_cm2, gaussian_per_aa, grid_aa};
 use comagauge::frame::Aperture;
@@ -223,5 +225,6 @@ fn main() -> std::io::Result<()> {
         .map_or_else(|| PathBuf::from("demo-spectra"), PathBuf::from);
     let tables = Tables::bundled();
     std::fs::write(folder.join("infrared.csv"), infrared(&tables))?;
-    std::fs::write(folder.join("optical.txt"), optical(&tables))
+    std::fs::write(folder.join("optical.txt"), optical(&tables))?;
+    std::fs::write(folder.join("nearuv.txt"), nearuv::near_ultraviolet())
 }

@@ -2,9 +2,10 @@
 //!
 //! Imports floors 0–6. Reads no file and prints nothing; what it returns is all that the edges see.
 
+use crate::by_line::{self, ByLine, LineSet};
 use crate::coma::{ApertureKm, Lengths, ResidenceGrid, molecules_per_flux};
 use crate::dust::{DustResult, dust};
-use crate::fit::{BandFit, BandModel, FitSettings, SpectrumFit, fit_spectrum};
+use crate::fit::{BandFit, BandModel, Features, FitSettings, SpectrumFit, features, fit_spectrum};
 use crate::frame::orbit::Sky;
 use crate::frame::{Aperture, Frame, Geometry, to_rest_within};
 use crate::ground::{Caveat, Error, Measured, Result, Species};
@@ -76,6 +77,8 @@ pub struct BandSettings {
     pub opacity_cm2: Option<f64>,
     /// A structured band that one Gaussian follows only at low resolution: its intrinsic width, Å.
     pub structured_fwhm_aa: Option<f64>,
+    /// The lines of a `[[lines]]` table that the band stands for.
+    pub lines: Option<LineSet>,
 }
 
 /// A g-factor scaled to the comet's heliocentric distance.
@@ -124,6 +127,23 @@ pub struct RatioSettings {
     pub basis: Basis,
     /// Published measurements of the same ratio.
     pub known: Vec<Entry>,
+    /// Published values of the same ratio to read it beside.
+    pub beside: Vec<Beside>,
+}
+
+/// A published value beside a ratio: a mean of comets, the Sun.
+#[derive(Clone, Debug, PartialEq, serde::Serialize)]
+pub struct Beside {
+    /// What it is.
+    pub what: String,
+    /// log10 of the ratio.
+    pub log10: f64,
+    /// Its error or scatter, dex.
+    pub log10_sigma: Option<f64>,
+    /// Source.
+    pub source: String,
+    /// True when it was recalled, not read.
+    pub from_memory: bool,
 }
 
 /// One band of the result.
@@ -178,6 +198,8 @@ pub struct Analysis {
     pub bands: Vec<BandResult>,
     /// The dust, where the continuum tells of it.
     pub dust: Vec<DustResult>,
+    /// Species of `[[lines]]` tables line by line.
+    pub by_line: Vec<ByLine>,
     /// Species in the order of their first band.
     pub species: Vec<SpeciesResult>,
     /// Ratios in the order asked for.
@@ -203,14 +225,23 @@ pub fn analyse(spectra: &[Spectrum], settings: &Settings) -> Result<Analysis> {
     let bands = band_results(settings, &fits, &home, aperture_cm2, &mut caveats);
     note_disagreement(settings, &bands, &mut caveats);
     let dust = dust(settings, &fits, &mut caveats);
-    let plans = species_plans(settings, &fits, &home);
-    let blocks = flux_blocks(settings, &fits);
+    let features = line_features(settings, &fits, &home)?;
+    let by_line = lines(
+        settings,
+        (&fits, &features),
+        &home,
+        aperture_cm2,
+        &mut caveats,
+    );
+    let plans = species_plans(settings, &fits, &home, &by_line);
+    let blocks = flux_blocks(settings, &fits, &features);
     if plans.is_empty() {
         return Ok(Analysis {
             aperture_cm2,
             fits,
             bands,
             dust,
+            by_line,
             species: vec![],
             ratios: vec![],
             caveats,
@@ -228,6 +259,7 @@ pub fn analyse(spectra: &[Spectrum], settings: &Settings) -> Result<Analysis> {
         fits,
         bands,
         dust,
+        by_line,
         species,
         ratios,
         caveats,
@@ -430,10 +462,55 @@ fn note_band(
     }
 }
 
+/// The lines of `[[lines]]` bands measured one by one, for every fit.
+fn line_features(
+    settings: &Settings,
+    fits: &[(usize, SpectrumFit)],
+    home: &[usize],
+) -> Result<Vec<Features>> {
+    let mut wanted = vec![Vec::new(); fits.len()];
+    for b in (0..settings.bands.len()).filter(|b| settings.bands[*b].lines.is_some()) {
+        let (at, within) = find_fit(settings, fits, home, b);
+        wanted[at].push(within);
+    }
+    fits.iter()
+        .zip(&wanted)
+        .map(|((i, fit), wanted)| features(fit, wanted, settings.spectra[*i].fit.sampling))
+        .collect()
+}
+
+fn lines(
+    settings: &Settings,
+    (fits, features): (&[(usize, SpectrumFit)], &[Features]),
+    home: &[usize],
+    aperture_cm2: f64,
+    caveats: &mut Vec<Caveat>,
+) -> Vec<ByLine> {
+    let groups: Vec<by_line::Group<'_>> = settings
+        .bands
+        .iter()
+        .enumerate()
+        .filter_map(|(b, band)| {
+            let (set, species) = (band.lines.as_ref()?, band.species.as_ref()?);
+            let (at, within) = find_fit(settings, fits, home, b);
+            Some(by_line::Group {
+                block: at,
+                band: within,
+                id: &band.model.id,
+                species,
+                set,
+            })
+        })
+        .collect();
+    let observer_au = settings.geometry.observer_au;
+    by_line::measure(&groups, features, observer_au, aperture_cm2, caveats)
+}
+
 fn species_plans(
     settings: &Settings,
     fits: &[(usize, SpectrumFit)],
     home: &[usize],
+    by_line: &[ByLine],
 ) -> Vec<SpeciesPlan> {
     let km = ApertureKm::at(&settings.aperture, settings.geometry.observer_au);
     settings
@@ -464,13 +541,31 @@ fn species_plans(
                 .coma
                 .as_ref()
                 .map(|c| lifetimes(c, &km, settings.speed_sigma));
+            let lines = by_line.iter().find(|l| l.species == s.species);
+            let robust = lines.filter(|l| l.robust);
             SpeciesPlan {
                 species: s.species.clone(),
-                bands,
+                bands: robust.map_or(bands, |l| line_shares(l, fits)),
+                weights: robust.map(|l| l.shares.iter().map(|s| s.weight).collect()),
+                error_factor: lines.map_or(1.0, |l| l.error_factor),
                 lifetimes,
             }
         })
         .filter(|p: &SpeciesPlan| !p.bands.is_empty())
+        .collect()
+}
+
+/// The features of a robust column; they follow the bands in the block of fluxes.
+fn line_shares(lines: &ByLine, fits: &[(usize, SpectrumFit)]) -> Vec<BandShare> {
+    lines
+        .shares
+        .iter()
+        .map(|s| BandShare {
+            block: s.block,
+            band: fits[s.block].1.bands.len() + s.feature,
+            molecules_per_flux: s.molecules_per_flux,
+            g_sigma: s.g_sigma,
+        })
         .collect()
 }
 
@@ -494,14 +589,42 @@ fn lifetimes(coma: &ComaSettings, km: &ApertureKm, speed_sigma: f64) -> Lifetime
     }
 }
 
-fn flux_blocks(settings: &Settings, fits: &[(usize, SpectrumFit)]) -> Vec<FluxBlock> {
+/// Fluxes of the bands, then, where a species wants its robust column, those of the features. The
+/// covariance between features and whole bands is left out: no species uses both.
+fn flux_blocks(
+    settings: &Settings,
+    fits: &[(usize, SpectrumFit)],
+    features: &[Features],
+) -> Vec<FluxBlock> {
+    let robust = settings
+        .bands
+        .iter()
+        .any(|b| b.lines.as_ref().is_some_and(|l| l.robust));
     fits.iter()
-        .map(|(i, fit)| FluxBlock {
-            flux_erg_s_cm2: fit.bands.iter().map(|b| b.flux_erg_s_cm2.value).collect(),
-            covariance: fit.flux_covariance.clone(),
-            calibration_sigma: settings.spectra[*i].calibration_sigma,
-            sided: fit.sided.clone(),
-            sampled: fit.sampled.clone(),
+        .zip(features)
+        .map(|((i, fit), features)| {
+            let list = if robust {
+                features.list.as_slice()
+            } else {
+                &[]
+            };
+            let (n, m) = (fit.bands.len(), list.len());
+            let mut covariance = fit.flux_covariance.clone().resize(n + m, n + m, 0.0);
+            if robust {
+                covariance
+                    .view_mut((n, n), (m, m))
+                    .copy_from(&features.covariance);
+            }
+            let bands = fit.bands.iter().map(|b| b.flux_erg_s_cm2.value);
+            FluxBlock {
+                flux_erg_s_cm2: bands
+                    .chain(list.iter().map(|f| f.flux_erg_s_cm2.value))
+                    .collect(),
+                covariance,
+                calibration_sigma: settings.spectra[*i].calibration_sigma,
+                sided: fit.sided.clone(),
+                sampled: fit.sampled.clone(),
+            }
         })
         .collect()
 }

@@ -14,6 +14,7 @@
 pub mod alternatives;
 pub mod analysis;
 pub mod atomic;
+pub mod by_line;
 pub mod cli;
 pub mod coma;
 pub mod comparison;

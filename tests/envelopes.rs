@@ -128,7 +128,7 @@ fn envelopes_are_refused_where_nothing_is_known() {
     for (extra, wanted) in [
         (
             "[[band]]\nid = \"CO2-4.26um\"\nshape = \"box\"\n",
-            "neither",
+            "is not known",
         ),
         (
             "[[band]]\nid = \"CO2-4.26um\"\ntemperature_k = 70.0\n",

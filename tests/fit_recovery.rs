@@ -1,6 +1,9 @@
 //! Injection and recovery with the fit alone: known Gaussians on sloped continua with known noise.
 
-use comagauge::fit::{BandModel, FitSettings, Resolution, Sampling, SpectrumFit, fit_spectrum};
+use comagauge::fit::{
+    BandModel, FitSettings, Freedom, Resolution, Sampling, SpectrumFit, Structure, features,
+    fit_spectrum,
+};
 use comagauge::frame::{Aperture, Frame, Geometry, RestSpectrum, to_rest};
 use comagauge::spectrum::{Sample, Spectrum};
 use rand::SeedableRng;
@@ -256,4 +259,58 @@ fn impossible_fits_are_refused_in_words() {
     );
     let text = outside.expect_err("outside").to_string();
     assert!(text.contains("lies outside"), "{text}");
+}
+
+/// A band of four lines with tabulated shares 0.4, 0.3, 0.2, 0.1: the third is three times too bright,
+/// the last two are nearer than a width to each other.
+#[test]
+fn lines_of_a_band_are_measured_one_by_one() {
+    let (centre_aa, structure) =
+        Structure::of_lines(&[(3600.0, 0.4), (3602.0, 0.3), (3605.0, 0.2), (3605.05, 0.1)])
+            .unwrap();
+    let mut model = band("lines", centre_aa, 5.0);
+    model.structure = structure;
+    model.width = Freedom::Held;
+    let mut settings = FitSettings::new(vec![model]);
+    settings.resolution = Some(Resolution::FwhmAa(0.1));
+    settings.continuum.order = Some(1);
+    let scene = Scene {
+        x: grid(3597.0, 3609.0, 300),
+        lines: vec![
+            (3600.0, 0.1, 400.0),
+            (3602.0, 0.1, 300.0),
+            (3605.0, 0.1, 600.0),
+            (3605.05, 0.1, 300.0),
+        ],
+        continuum: |x| 500.0 + 20.0 * (x - 3603.0),
+        sigma: 60.0,
+    };
+    let wanted = [400.0, 300.0, 900.0];
+    let mut sums = [(0.0, 0.0); 3];
+    let trials = 300;
+    for seed in 0..trials {
+        let mut rng = Xoshiro256PlusPlus::seed_from_u64(seed);
+        let fit = fit_spectrum(&scene.draw(&mut rng, true), &settings).expect("a fit");
+        let found = features(&fit, &[0], Sampling::Centre).expect("features");
+        let sizes: Vec<usize> = found.list.iter().map(|f| f.lines.len()).collect();
+        assert_eq!(sizes, [1, 1, 2]);
+        assert!(found.list[0].others[0] < 1e-6);
+        // The weak companion lies in the strong line's light: more than twice its own.
+        assert!(found.list[2].others[1] > 1.0 && found.list[2].others[0] < 0.5);
+        for (i, f) in found.list.iter().enumerate() {
+            let flux = f.flux_erg_s_cm2;
+            let pull = (flux.value - wanted[i]) / flux.sigma;
+            sums[i].0 += pull;
+            sums[i].1 += pull * pull;
+        }
+    }
+    let n = trials as f64;
+    for (i, (s, q)) in sums.iter().enumerate() {
+        let (mean, scatter) = (s / n, (q / n - (s / n).powi(2)).sqrt());
+        println!("line {i}: pull {mean:+.3}, scatter {scatter:.3}");
+        assert!(
+            mean.abs() < 0.25 && (scatter - 1.0).abs() < 0.15,
+            "{mean} {scatter}"
+        );
+    }
 }

@@ -86,10 +86,49 @@ fn demo_rates_agree_with_the_truth() {
 }
 
 #[test]
+fn columns_of_the_near_ultraviolet_demo_agree_with_the_truth() {
+    let dir = tempfile::tempdir().unwrap();
+    let result = demo("nearuv.toml", dir.path());
+    for (species, wanted) in truth("## near ultraviolet") {
+        let rows = result["species"].as_array().unwrap();
+        let row = rows.iter().find(|r| r["species"] == species.as_str());
+        let row = row.unwrap_or_else(|| panic!("{species}"));
+        let found = row["column_cm2"].as_f64().unwrap();
+        let sigma = row["column_sigma_cm2"].as_f64().unwrap();
+        // Made with the same g, so noise, Fraunhofer structure and the drawn errors of g are between.
+        assert!((found - wanted).abs() < 2.0 * sigma, "{species} {found:e}");
+        assert!((found / wanted - 1.0).abs() < 0.1, "{species} {found:e}");
+    }
+    let readme = std::fs::read_to_string(root().join("demo-spectra/README.md")).unwrap();
+    let said = readme.split("log N(Ni I)/N(Fe I) = ").nth(1).unwrap();
+    let wanted: f64 = said
+        .split_whitespace()
+        .next()
+        .unwrap()
+        .trim_end_matches(',')
+        .replace('−', "-")
+        .parse()
+        .unwrap();
+    let ratio = &result["ratios"][0];
+    let log = ratio["log10_median"].as_f64().unwrap();
+    let half =
+        0.5 * (ratio["log10_high68"].as_f64().unwrap() - ratio["log10_low68"].as_f64().unwrap());
+    assert!(
+        (log - wanted).abs() < f64::min(0.05, 2.0 * half),
+        "{log} ± {half}"
+    );
+    let beside = ratio["beside"].as_array().unwrap();
+    assert!(beside.iter().any(|b| b["what"] == "solar photosphere"));
+    for file in ["lines.csv", "excitation.svg", "excitation-narrow.svg"] {
+        assert!(dir.path().join(file).is_file(), "{file}");
+    }
+}
+
+#[test]
 fn a_resolved_plan_gives_the_same_result_to_the_bit() {
     let dir = tempfile::tempdir().unwrap();
     let (first, second) = (dir.path().join("first"), dir.path().join("second"));
-    for plan in ["infrared.toml", "optical.toml"] {
+    for plan in ["infrared.toml", "optical.toml", "nearuv.toml"] {
         demo(plan, &first);
         let resolved = first.join("plan.resolved.toml");
         let done = run(&[
@@ -199,7 +238,7 @@ fn the_committed_demo_is_what_the_generator_makes() {
         .status()
         .expect("built beside the tests");
     assert!(done.success());
-    for file in ["infrared.csv", "optical.txt"] {
+    for file in ["infrared.csv", "optical.txt", "nearuv.txt"] {
         let read = |p: PathBuf| std::fs::read_to_string(p).unwrap();
         let (made, kept) = (
             read(dir.path().join(file)),

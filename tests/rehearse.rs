@@ -45,6 +45,22 @@ fn rehearse(plan: &str, out: &Path, threads: &str, more: &[&str]) -> String {
 }
 
 #[test]
+fn the_robust_ratio_of_lines_is_covered() {
+    let dir = tempfile::tempdir().unwrap();
+    let text = rehearse("nearuv.toml", dir.path(), "2", &["--trials", "200"]);
+    let all = rows(&text);
+    let row = all.iter().find(|r| r["name"] == "Ni I/Fe I").unwrap();
+    let (bias, error) = (
+        number(row, "bias_over_sigma"),
+        number(row, "bias_over_sigma_error"),
+    );
+    assert!(bias.abs() < 3.5 * error + 0.1, "{row:?}");
+    // Three and a half binomial errors of 200 trials.
+    assert!((0.56..0.81).contains(&number(row, "coverage68")), "{row:?}");
+    assert!((number(row, "pull_scatter") - 1.0).abs() < 0.2, "{row:?}");
+}
+
+#[test]
 fn coverage_and_bias_of_the_infrared_demo() {
     let dir = tempfile::tempdir().unwrap();
     for noise in [

@@ -191,6 +191,7 @@ mod tests {
             to: Species::new("H2O"),
             basis: Basis::Column,
             known: Vec::new(),
+            beside: vec![],
         }]
     }
 

@@ -215,10 +215,21 @@ fn write(
         ("fit.csv", report::fit_csv(analysis).into_bytes()),
         ("plan.resolved.toml", to_toml(resolved)?.into_bytes()),
     ];
-    for (width, fit, standing) in [
-        (Width::Double, "fit.svg", "standing.svg"),
-        (Width::Single, "fit-narrow.svg", "standing-narrow.svg"),
+    if !analysis.by_line.is_empty() {
+        files.push(("lines.csv", report::lines_csv(analysis).into_bytes()));
+    }
+    for (width, fit, standing, excitation) in [
+        (Width::Double, "fit.svg", "standing.svg", "excitation.svg"),
+        (
+            Width::Single,
+            "fit-narrow.svg",
+            "standing-narrow.svg",
+            "excitation-narrow.svg",
+        ),
     ] {
+        if let Some(svg) = report::excitation_figure(analysis, settings, width)? {
+            files.push((excitation, svg.into_bytes()));
+        }
         let svg = report::fit_figure(analysis, settings, width)?;
         files.push((fit, svg.into_bytes()));
         if let Some(svg) = report::standing_figure(analysis, settings, width)? {

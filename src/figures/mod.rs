@@ -12,6 +12,7 @@ mod axis;
 mod canvas;
 mod coverage;
 mod curve;
+mod excitation;
 mod fit;
 mod fit_panel;
 mod label;
@@ -32,6 +33,7 @@ pub use alternatives::{
 pub use axis::Scale;
 pub use coverage::{CoverageFigure, CoveragePoint, CoverageRow, coverage_svg};
 pub use curve::{Curve, CurveFigure, Tick, VerticalMark, range_svg};
+pub use excitation::{ExcitationFigure, ExcitationPanel, ExcitationPoint, excitation_svg};
 pub use fit::{FitBand, FitFigure, FitPanel, fit_svg};
 pub use quicklook::{Position, QuicklookFigure, quicklook_svg};
 pub use scatter::{ScatterFigure, ScatterPoint, scatter_svg};

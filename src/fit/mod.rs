@@ -4,6 +4,7 @@
 //! Imports floors 0–3. Never drops, clips or smooths a sample unasked, and never adds a component.
 
 mod basis;
+mod by_line;
 mod carrier;
 mod detect;
 mod fitted_continuum;
@@ -26,6 +27,7 @@ mod uncertain;
 mod walkers;
 mod window;
 
+pub use by_line::{Feature, Features, features};
 pub use carrier::Carrier;
 pub use detect::upper_limit;
 pub use fitted_continuum::{FittedContinuum, FittedThermal};

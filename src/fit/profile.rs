@@ -121,6 +121,23 @@ pub fn winged(
     )
 }
 
+/// Profile of a line at any wavelength, Å⁻¹: at the point, or averaged over the pixel.
+pub(super) fn profile_at(
+    sampling: Sampling,
+    x_aa: f64,
+    edges_aa: (f64, f64),
+    centre_aa: f64,
+    sigma_aa: f64,
+) -> f64 {
+    if (x_aa - centre_aa).abs() > REACH_SIGMA * sigma_aa + (edges_aa.1 - edges_aa.0) {
+        return 0.0;
+    }
+    match sampling {
+        Sampling::Centre => gaussian(x_aa, centre_aa, sigma_aa).value,
+        Sampling::Pixel => gaussian_over_pixel(edges_aa.0, edges_aa.1, centre_aa, sigma_aa).value,
+    }
+}
+
 /// Standard deviation of a Gaussian from its full width at half maximum.
 pub fn sigma_from_fwhm(fwhm: f64) -> f64 {
     fwhm / FWHM_PER_SIGMA

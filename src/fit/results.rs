@@ -107,8 +107,13 @@ impl BandFit {
         if self.integral_aa.is_some() {
             return 0.0;
         }
+        self.flux_erg_s_cm2.value * self.unit_at(x_aa)
+    }
+
+    /// The same for unit flux, Å⁻¹.
+    pub(super) fn unit_at(&self, x_aa: f64) -> f64 {
         let (centre, sigma) = (self.centre_aa, self.line_sigma_aa);
-        let profile: f64 = match (&self.template, self.wings) {
+        match (&self.template, self.wings) {
             (Some(template), _) => template.at(x_aa / centre).0 / centre,
             (None, Some([h3, h4])) => winged(x_aa, None, centre, sigma, [h3.0, h4.0]).0.value,
             (None, None) => self
@@ -117,8 +122,7 @@ impl BandFit {
                 .iter()
                 .map(|(ratio, share)| share * gaussian(x_aa, centre * ratio, sigma).value)
                 .sum(),
-        };
-        self.flux_erg_s_cm2.value * profile
+        }
     }
 }
 

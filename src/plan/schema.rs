@@ -397,7 +397,7 @@ impl BandPlan {
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
 #[serde(deny_unknown_fields)]
 pub struct LinesPlan {
-    /// The atom or ion, for example "Ni I".
+    /// The atom or ion, for example "Ni I"; or "CN" for the lines of its violet bands.
     pub species: String,
     /// Ranges to fit; the lines of one range share velocity and column.
     pub windows: Vec<[f64; 2]>,
@@ -407,6 +407,10 @@ pub struct LinesPlan {
     /// Lines to leave out, by wavelength within 0.05 Å.
     #[serde(default, skip_serializing_if = "Vec::is_empty")]
     pub without: Vec<f64>,
+    /// The species' column is the robust mean of its lines, in which lines that disagree lose their
+    /// weight (default false: the weighted mean of the windows).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub robust: Option<bool>,
     /// Unit of the wavelengths here (default: that of the first spectrum).
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub unit: Option<String>,

@@ -112,6 +112,10 @@ pub struct SpeciesPlan {
     pub species: Species,
     /// Its bands, at least one.
     pub bands: Vec<BandShare>,
+    /// Weights of the bands, where they are not to be the inverse variances; they sum to one.
+    pub weights: Option<Vec<f64>>,
+    /// Factor ≥ 1 on the error of the species' molecules, from the scatter of its lines.
+    pub error_factor: f64,
     /// Coma model; `None` leaves the production rate open.
     pub lifetimes: Option<Lifetimes>,
 }
@@ -164,13 +168,22 @@ pub fn draw(
     let settings = settings.checked()?;
     let roots = blocks.iter().map(root).collect::<Result<Vec<_>>>()?;
     let weights: Vec<Vec<f64>> = plans.iter().map(|p| band_weights(blocks, p)).collect();
+    let extra: Vec<f64> = plans
+        .iter()
+        .zip(&weights)
+        .map(|(p, w)| scatter_molecules(blocks, p, w))
+        .collect();
     let shape = (settings.count, plans.len());
     let mut out = Draws {
         species: plans.iter().map(|p| p.species.clone()).collect(),
         molecules: plans
             .iter()
             .zip(&weights)
-            .map(|(p, w)| combine(blocks, p, w))
+            .zip(&extra)
+            .map(|((p, w), extra)| {
+                let found = combine(blocks, p, w);
+                Measured::new(found.value, found.sigma.hypot(*extra))
+            })
             .collect(),
         production_per_s: Vec::new(),
         molecule_draws: Array2::zeros(shape),
@@ -191,7 +204,10 @@ pub fn draw(
     for row in 0..settings.count {
         let universe = Universe::new(blocks, &roots, speed_sigma, &mut rng);
         for (column, (plan, weight)) in plans.iter().zip(&weights).enumerate() {
-            let (molecules, factor) = universe.molecules(plan, weight, &mut rng);
+            let (mut molecules, factor) = universe.molecules(plan, weight, &mut rng);
+            if extra[column] > 0.0 {
+                molecules += extra[column] * normal(&mut rng);
+            }
             out.molecule_draws[(row, column)] = molecules;
             out.factor_draws[(row, column)] = factor;
             if let Some(lifetimes) = &plan.lifetimes {
@@ -233,18 +249,36 @@ fn root(block: &FluxBlock) -> Result<DMatrix<f64>> {
 /// Weights of a species' bands: inverse variance of the molecules each gives, from flux error and
 /// g error; they sum to one and stay the same in all draws.
 fn band_weights(blocks: &[FluxBlock], plan: &SpeciesPlan) -> Vec<f64> {
+    if let Some(weights) = &plan.weights {
+        return weights.clone();
+    }
     let inverse: Vec<f64> = plan
         .bands
         .iter()
-        .map(|share| {
-            let block = &blocks[share.block];
-            let flux_variance = block.covariance[(share.band, share.band)];
-            let g_error = block.flux_erg_s_cm2[share.band] * share.g_sigma;
-            1.0 / ((flux_variance + g_error * g_error) * share.molecules_per_flux.powi(2))
-        })
+        .map(|share| 1.0 / molecule_variance(blocks, share))
         .collect();
     let sum: f64 = inverse.iter().sum();
     inverse.iter().map(|w| w / sum).collect()
+}
+
+/// Variance of the molecules that one band gives, from flux error and g error.
+fn molecule_variance(blocks: &[FluxBlock], share: &BandShare) -> f64 {
+    let block = &blocks[share.block];
+    let flux_variance = block.covariance[(share.band, share.band)];
+    let g_error = block.flux_erg_s_cm2[share.band] * share.g_sigma;
+    (flux_variance + g_error * g_error) * share.molecules_per_flux.powi(2)
+}
+
+/// Standard deviation that, added in square to the formal one, multiplies it by the plan's factor.
+fn scatter_molecules(blocks: &[FluxBlock], plan: &SpeciesPlan, weights: &[f64]) -> f64 {
+    let formal: f64 = plan
+        .bands
+        .iter()
+        .zip(weights)
+        .map(|(share, w)| w * w * molecule_variance(blocks, share))
+        .sum();
+    let factor = plan.error_factor;
+    (formal * (factor * factor - 1.0).max(0.0)).sqrt()
 }
 
 fn combine(blocks: &[FluxBlock], plan: &SpeciesPlan, weights: &[f64]) -> Measured {
@@ -338,4 +372,61 @@ fn normal(rng: &mut Xoshiro256PlusPlus) -> f64 {
 
 fn factor(sigma: f64, rng: &mut Xoshiro256PlusPlus) -> f64 {
     (sigma * normal(rng)).exp()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn plan(weights: Option<Vec<f64>>, error_factor: f64) -> SpeciesPlan {
+        let share = |band| BandShare {
+            block: 0,
+            band,
+            molecules_per_flux: 2.0,
+            g_sigma: 0.0,
+        };
+        SpeciesPlan {
+            species: Species::new("Fe I"),
+            bands: vec![share(0), share(1)],
+            weights,
+            error_factor,
+            lifetimes: None,
+        }
+    }
+
+    fn drawn(plan: SpeciesPlan) -> (Measured, f64) {
+        let block = FluxBlock {
+            flux_erg_s_cm2: vec![10.0, 12.0],
+            covariance: DMatrix::from_diagonal_element(2, 2, 1.0),
+            calibration_sigma: 0.0,
+            sided: vec![],
+            sampled: vec![],
+        };
+        let settings = DrawSettings {
+            count: 40_000,
+            seed: 3,
+        };
+        let draws = draw(&[block], &[plan], 0.0, settings).unwrap();
+        let column = draws.molecule_draws.column(0);
+        let mean = column.mean().unwrap();
+        let variance = column.iter().map(|m| (m - mean).powi(2)).sum::<f64>() / 39_999.0;
+        (draws.molecules[0], variance.sqrt())
+    }
+
+    #[test]
+    fn scatter_multiplies_the_error_and_leaves_the_value() {
+        // Equal weights: 2 × 11 ± 2/√2.
+        let (plain, spread) = drawn(plan(None, 1.0));
+        assert!((plain.value - 22.0).abs() < 1e-12 && (spread / 2f64.sqrt() - 1.0).abs() < 0.02);
+        let (wide, spread) = drawn(plan(None, 3.0));
+        assert!((wide.value - 22.0).abs() < 1e-12);
+        assert!((wide.sigma / plain.sigma - 3.0).abs() < 1e-12);
+        assert!((spread / wide.sigma - 1.0).abs() < 0.02);
+    }
+
+    #[test]
+    fn given_weights_are_used() {
+        let (found, _) = drawn(plan(Some(vec![1.0, 0.0]), 1.0));
+        assert!((found.value - 20.0).abs() < 1e-12 && (found.sigma - 2.0).abs() < 1e-12);
+    }
 }

@@ -80,9 +80,18 @@ impl TrueSpectrum {
                 self.clean_erg_s_cm2_aa[i] + self.sigma_erg_s_cm2_aa[i] * deviate
             })
             .collect();
+        self.with_flux(flux)
+    }
+
+    /// The spectrum before noise.
+    pub(super) fn clean(&self) -> Result<Spectrum> {
+        self.with_flux(self.clean_erg_s_cm2_aa.clone())
+    }
+
+    fn with_flux(&self, flux_erg_s_cm2_aa: Vec<f64>) -> Result<Spectrum> {
         let columns = Columns {
             wavelength_aa: self.wavelength_aa.clone(),
-            flux_erg_s_cm2_aa: flux,
+            flux_erg_s_cm2_aa,
             sigma_erg_s_cm2_aa: self.errors_given.then(|| self.sigma_erg_s_cm2_aa.clone()),
             flagged: self.flagged.clone(),
             lines: LineNumbers::default(),

@@ -49,10 +49,12 @@ impl Scene {
             let fit = base.fits.iter().find(|(of, _)| *of == i).map(|(_, f)| f);
             truths.push(TrueSpectrum::new(&rest, fit));
         }
+        let before_noise = robust_truth(&truths, &settings)?;
+        let truth = before_noise.as_ref().unwrap_or(&base);
         let ratios = settings
             .ratios
             .iter()
-            .map(|r| true_ratio(&base, &r.of, &r.to, r.basis))
+            .map(|r| true_ratio(truth, &r.of, &r.to, r.basis))
             .collect();
         Ok(Self {
             spectra: truths,
@@ -84,10 +86,27 @@ fn for_trials(settings: &Settings, how: Rehearsal) -> Settings {
     for g in out.bands.iter_mut().filter_map(|b| b.efficiency.as_mut()) {
         g.relative_sigma = 0.0;
     }
+    for set in out.bands.iter_mut().filter_map(|b| b.lines.as_mut()) {
+        set.g_is_exact = true;
+    }
     for coma in out.species.iter_mut().filter_map(|s| s.coma.as_mut()) {
         coma.length_sigma = 0.0;
     }
     out
+}
+
+/// The robust column of lines is not that of the bands in the model; where a species uses it, the truth
+/// is what the model before noise gives. Without given errors that spectrum has none to be judged by.
+fn robust_truth(spectra: &[TrueSpectrum], settings: &Settings) -> Result<Option<Analysis>> {
+    let mut sets = settings.bands.iter().filter_map(|b| b.lines.as_ref());
+    if !sets.any(|l| l.robust) || spectra.iter().any(|s| !s.errors_given) {
+        return Ok(None);
+    }
+    let clean = spectra
+        .iter()
+        .map(TrueSpectrum::clean)
+        .collect::<Result<Vec<_>>>()?;
+    analyse(&clean, settings).map(Some)
 }
 
 fn true_ratio(base: &Analysis, of: &Species, to: &Species, basis: Basis) -> f64 {

@@ -1,6 +1,7 @@
 //! `result.json`.
 
-use crate::analysis::{Analysis, BandResult, RatioResult, Settings, SpeciesResult};
+use super::lines::{LinesOut, lines_out};
+use crate::analysis::{Analysis, BandResult, RatioResult, RatioSettings, Settings, SpeciesResult};
 use crate::fit::SampleUse;
 use crate::frame::Geometry;
 use serde::Serialize;
@@ -28,6 +29,7 @@ struct Document<'a> {
     #[serde(skip_serializing_if = "Vec::is_empty")]
     dust: Vec<DustOut>,
     species: Vec<SpeciesOut<'a>>,
+    lines: Vec<LinesOut<'a>>,
     ratios: Vec<RatioOut<'a>>,
     standings: Vec<StandingOut<'a>>,
     caveats: Vec<CaveatOut>,
@@ -135,6 +137,7 @@ struct RatioOut<'a> {
     log10_low68: Option<f64>,
     log10_high68: Option<f64>,
     limit: Option<f64>,
+    beside: &'a [crate::analysis::Beside],
 }
 
 #[derive(Serialize)]
@@ -182,7 +185,13 @@ pub fn result_json(analysis: &Analysis, settings: &Settings, inputs: &[Input]) -
             .iter()
             .map(|s| species(s, settings))
             .collect(),
-        ratios: analysis.ratios.iter().map(ratio).collect(),
+        lines: analysis.by_line.iter().map(lines_out).collect(),
+        ratios: analysis
+            .ratios
+            .iter()
+            .zip(&settings.ratios)
+            .map(|(r, s)| ratio(r, s))
+            .collect(),
         standings: analysis.ratios.iter().filter_map(standing).collect(),
         caveats: analysis
             .caveats
@@ -306,7 +315,7 @@ fn species<'a>(s: &'a SpeciesResult, settings: &'a Settings) -> SpeciesOut<'a> {
     }
 }
 
-fn ratio(r: &RatioResult) -> RatioOut<'_> {
+fn ratio<'a>(r: &'a RatioResult, settings: &'a RatioSettings) -> RatioOut<'a> {
     let linear = r.ratio.interval;
     let log = r.ratio.log10();
     RatioOut {
@@ -323,6 +332,7 @@ fn ratio(r: &RatioResult) -> RatioOut<'_> {
         log10_low68: log.and_then(|i| finite(i.low68)),
         log10_high68: log.and_then(|i| finite(i.high68)),
         limit: r.ratio.limit.and_then(finite),
+        beside: &settings.beside,
     }
 }
 

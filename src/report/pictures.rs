@@ -41,7 +41,7 @@ pub fn fit_figure(analysis: &Analysis, settings: &Settings, width: Width) -> Res
     fit_svg(&figure, width)
 }
 
-fn heading(settings: &Settings) -> String {
+pub(super) fn heading(settings: &Settings) -> String {
     match &settings.date {
         Some(date) => format!("{}, {date}", settings.label),
         None => settings.label.clone(),

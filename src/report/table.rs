@@ -1,6 +1,7 @@
 //! The table for people.
 
 use crate::analysis::{Analysis, BandResult, RatioResult, Settings, SpeciesResult};
+use crate::by_line::ByLine;
 use crate::dust::DustResult;
 use crate::ground::Measured;
 use crate::ratio::RatioKind;
@@ -27,9 +28,14 @@ pub fn summary_table(analysis: &Analysis, settings: &Settings) -> String {
         out.push('\n');
         out.push_str(&species(&analysis.species));
     }
+    if !analysis.by_line.is_empty() {
+        out.push('\n');
+        out.push_str(&by_line(&analysis.by_line));
+    }
     if !analysis.ratios.is_empty() {
         out.push('\n');
         out.push_str(&ratios(&analysis.ratios));
+        out.push_str(&beside(analysis, settings));
     }
     if !analysis.dust.is_empty() {
         out.push('\n');
@@ -201,6 +207,73 @@ fn ratios(list: &[RatioResult]) -> String {
         })
         .collect();
     grid(&["ratio", "median", "68 % interval", "standing"], rows)
+}
+
+/// Means over single lines beside the column in use.
+fn by_line(list: &[ByLine]) -> String {
+    let rows = list
+        .iter()
+        .map(|s| {
+            let discordant = s.lines.iter().filter(|l| l.discordant).count();
+            let mark = |used: bool, text: String| if used { format!("{text} ←") } else { text };
+            vec![
+                s.species.to_string(),
+                s.lines.len().to_string(),
+                s.features.to_string(),
+                discordant.to_string(),
+                pair(s.mean_cm2),
+                format!("{:.2}", s.reduced_chi2),
+                mark(s.robust, pair(s.robust_cm2)),
+                format!("{:.2}", s.robust_reduced_chi2),
+                format!("{:.2}", s.error_factor),
+            ]
+        })
+        .collect();
+    grid(
+        &[
+            "line by line",
+            "lines",
+            "unblended",
+            "discordant",
+            "weighted mean cm⁻²",
+            "χ²/ν",
+            "robust mean cm⁻²",
+            "χ²/ν",
+            "error ×",
+        ],
+        rows,
+    )
+}
+
+/// log10 of ratios with published values to read them beside.
+fn beside(analysis: &Analysis, settings: &Settings) -> String {
+    let mut out = String::new();
+    for (r, s) in analysis.ratios.iter().zip(&settings.ratios) {
+        let Some(log) = r.ratio.log10().filter(|_| !s.beside.is_empty()) else {
+            continue;
+        };
+        let others: Vec<String> = s
+            .beside
+            .iter()
+            .map(|b| {
+                let sigma = b
+                    .log10_sigma
+                    .map_or_else(String::new, |s| format!(" ± {s:.2}"));
+                let memory = if b.from_memory { ", from memory" } else { "" };
+                format!("{} {:.2}{sigma} ({}{memory})", b.what, b.log10, b.source)
+            })
+            .collect();
+        out.push_str(&format!(
+            "log10 {}/{} = {:.3} ({:.3} – {:.3}); {}\n",
+            r.ratio.of,
+            r.ratio.to,
+            log.median,
+            log.low68,
+            log.high68,
+            others.join("; ")
+        ));
+    }
+    out
 }
 
 fn comets(count: usize) -> String {

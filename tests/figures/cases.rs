@@ -487,6 +487,7 @@ pub fn all_cases() -> Vec<Case> {
     all.extend(curve_cases());
     all.extend(quicklook_cases());
     all.extend(alternatives_cases());
+    all.extend(excitation_cases());
     all
 }
 
@@ -553,5 +554,56 @@ fn alternatives_cases() -> Vec<Case> {
         case("alternatives, hard", &["C₂H₆/H₂O 1"], move |w| {
             alternatives_svg(&hard, w)
         }),
+    ]
+}
+
+fn excitation(names: &[&str], each: usize, wrong: &[usize]) -> ExcitationFigure {
+    let point = |i: usize| {
+        let discordant = wrong.contains(&i);
+        ExcitationPoint {
+            x: 3.0 + (i as f64 * 0.618_034).fract(),
+            ratio: (0.1 * noise(i)).exp() * if discordant { 3.0 } else { 1.0 },
+            sigma: 0.05 + 0.1 * noise(i + 7).abs(),
+            blend: i % 11 == 5,
+            discordant,
+            label: format!("{:.2} Å", 3400.0 + 7.3 * i as f64),
+        }
+    };
+    ExcitationFigure {
+        title: "C/2031 A1, 2032-01-11".to_owned(),
+        x_label: "Energy of the upper level (eV)".to_owned(),
+        y_label: "N(line) / N(mean)".to_owned(),
+        panels: names
+            .iter()
+            .map(|name| ExcitationPanel {
+                name: (*name).to_owned(),
+                remark: format!("{each} lines (3 blended, open), 12 too weak to draw"),
+                points: (0..each).map(point).collect(),
+            })
+            .collect(),
+    }
+}
+
+fn excitation_cases() -> Vec<Case> {
+    let one = excitation(&["Fe I"], 24, &[6]);
+    let crowd = excitation(&["Ni I", "Fe I", "CN"], 120, &[1, 2, 9, 14, 22, 35, 56, 57]);
+    let mut wide = excitation(&["Fe I"], 20, &[3]);
+    wide.panels[0].points[5].ratio = 4000.0;
+    wide.panels[0].points[6].ratio = -0.2;
+    wide.panels[0].points[7].sigma = 50.0;
+    vec![
+        case(
+            "excitation, one wrong line",
+            &["Fe I", "24 lines", "3443.80 Å"],
+            move |w| excitation_svg(&one, w),
+        ),
+        case("excitation, crowd", &["Ni I", "Fe I", "CN"], move |w| {
+            excitation_svg(&crowd, w)
+        }),
+        case(
+            "excitation, far beyond",
+            &["Fe I", "3421.90 Å"],
+            move |w| excitation_svg(&wide, w),
+        ),
     ]
 }

@@ -93,6 +93,7 @@ impl Checker<'_> {
             model,
             species,
             efficiency,
+            lines: None,
         })
     }
 

@@ -77,7 +77,7 @@ impl Checker<'_> {
         Ok(())
     }
 
-    fn parent_speed(&mut self, geometry: &Geometry) -> Result<(f64, String)> {
+    pub(super) fn parent_speed(&mut self, geometry: &Geometry) -> Result<(f64, String)> {
         let coma = &self.plan.coma;
         if let Some(v) = coma.speed_km_s {
             if coma.speed_law.is_some() {

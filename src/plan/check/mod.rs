@@ -8,6 +8,7 @@ mod convert;
 mod curves;
 mod efficiency;
 mod geometry;
+mod lifetimes;
 mod light;
 mod lines;
 mod ratios;
@@ -146,6 +147,7 @@ impl Checker<'_> {
         let bands = self.bands(&geometry)?;
         let ratios = self.ratios(&bands)?;
         let species = self.species(&bands, &ratios, &geometry)?;
+        self.note_lifetimes(&bands, &ratios, &geometry)?;
         let coma = &self.plan.coma;
         let speed_sigma = number_in(
             "speed_sigma",

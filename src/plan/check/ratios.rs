@@ -1,10 +1,11 @@
 //! Ratios of the plan and the published ones to compare them with.
 
 use super::Checker;
-use crate::analysis::{BandSettings, RatioSettings};
+use crate::analysis::{BandSettings, Beside, RatioSettings};
 use crate::comparison::{Selection, entries};
 use crate::ground::{Error, Result, Species, did_you_mean};
 use crate::ratio::Basis;
+use crate::tables::{Confidence, Statistic};
 
 impl Checker<'_> {
     pub(super) fn ratios(&mut self, bands: &[BandSettings]) -> Result<Vec<RatioSettings>> {
@@ -78,11 +79,62 @@ impl Checker<'_> {
             }
         }
         let known = entries(self.tables, &of, &to, basis, &Selection::default());
+        let beside = self.beside(&of, &to, basis);
         Ok(RatioSettings {
             of,
             to,
             basis,
             known,
+            beside,
         })
+    }
+
+    /// Published means of comets of the same ratio, and the Sun's for a ratio of elements.
+    fn beside(&mut self, of: &Species, to: &Species, basis: Basis) -> Vec<Beside> {
+        let mut out = Vec::new();
+        let same_basis = |b: crate::tables::Basis| {
+            (b == crate::tables::Basis::Column) == (basis == Basis::Column)
+        };
+        let tables = self.tables;
+        for p in tables.populations() {
+            let same = p.of.as_ref() == Some(of) && p.to.as_ref() == Some(to);
+            if !(same && p.statistic == Statistic::Mean && p.basis.is_some_and(same_basis)) {
+                continue;
+            }
+            let (log10, log10_sigma) = if p.log10 {
+                (p.value, p.sigma)
+            } else {
+                (
+                    p.value.log10(),
+                    p.sigma.map(|s| s / p.value / std::f64::consts::LN_10),
+                )
+            };
+            out.push(Beside {
+                what: format!("mean of {}", p.group),
+                log10,
+                log10_sigma,
+                source: self.cite(&p.provenance.source),
+                from_memory: p.provenance.how.is_memory(),
+            });
+        }
+        let element = |s: &Species| s.as_str().split(' ').next().unwrap_or_default().to_owned();
+        if !(of.as_str().ends_with(" I") && to.as_str().ends_with(" I")) {
+            return out;
+        }
+        let (of, to) = (element(of), element(to));
+        let sun = tables
+            .solar_abundances()
+            .iter()
+            .find(|a| a.element == of && a.relative_to == to && a.confidence == Confidence::High);
+        if let Some(a) = sun {
+            out.push(Beside {
+                what: a.set.clone(),
+                log10: a.log10_ratio(),
+                log10_sigma: a.sigma,
+                source: self.cite(&a.provenance.source),
+                from_memory: a.provenance.how.is_memory(),
+            });
+        }
+        out
     }
 }
