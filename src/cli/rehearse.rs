@@ -6,7 +6,7 @@ use crate::figures::Width;
 use crate::ground::Result;
 use crate::plan::{check, read_plan};
 use crate::ratio::DrawSettings;
-use crate::rehearse::{Noise, Rehearsal, rehearse};
+use crate::rehearse::{FLUX_STEPS, Noise, Rehearsal, completeness, injectable, rehearse};
 use crate::report;
 use clap::Args;
 use indicatif::{ProgressBar, ProgressStyle};
@@ -36,6 +36,10 @@ pub(super) struct Rehearse {
     /// Folder for rehearse.csv and rehearse.svg (default: beside the plan, named after it).
     #[arg(long, value_name = "DIR")]
     out: Option<PathBuf>,
+    /// Also inject every band at fluxes from 0 to 6 of its errors and count the detections: writes
+    /// completeness.csv and completeness.svg.
+    #[arg(long)]
+    completeness: bool,
     /// Print the table as CSV.
     #[arg(long)]
     csv: bool,
@@ -72,17 +76,30 @@ impl Rehearse {
         let csv = report::rehearsal_csv(&rehearsed);
         let svg = report::rehearsal_figure(&rehearsed, &settings.label, Width::Double)?;
         let folder = self.out.unwrap_or_else(|| default_folder(&self.plan));
-        report::write_all(
-            &folder,
-            &[
-                ("rehearse.csv", csv.clone().into_bytes()),
-                ("rehearse.svg", svg.into_bytes()),
-            ],
-        )?;
+        let mut files = vec![
+            ("rehearse.csv", csv.clone().into_bytes()),
+            ("rehearse.svg", svg.into_bytes()),
+        ];
+        let mut more = String::new();
+        if self.completeness {
+            let steps = FLUX_STEPS.len() * injectable(settings);
+            let bar = progress(how.trials * steps);
+            let found = completeness(&spectra, settings, how, &|| bar.inc(1));
+            bar.finish_and_clear();
+            let found = found?;
+            let figure = report::completeness_figure(&found, settings, Width::Double)?;
+            files.push((
+                "completeness.csv",
+                report::completeness_csv(&found).into_bytes(),
+            ));
+            files.extend(figure.map(|f| ("completeness.svg", f.into_bytes())));
+            more = report::completeness_table(&found, settings);
+        }
+        report::write_all(&folder, &files)?;
         output::print(&if self.csv {
             csv
         } else {
-            report::rehearsal_table(&rehearsed, &settings.label)
+            report::rehearsal_table(&rehearsed, &settings.label) + &more
         })?;
         output::complain(&format!("results in {}", folder.display()));
         Ok(())

@@ -53,23 +53,24 @@ impl Picked {
         let within = |ranges: &[(f64, f64)], w: f64| {
             ranges.iter().any(|(low, high)| (*low..=*high).contains(&w))
         };
-        let integrated = |w: f64| {
+        let integrated = |(low, high): (f64, f64)| {
             group.integrals.iter().any(|b| {
                 let limits = limits_aa(settings, *b);
-                (limits.0..=limits.1).contains(&w)
+                low < limits.1 && high > limits.0
             })
         };
         let edges_aa: Vec<(f64, f64)> = inside.iter().map(|i| edges(x, *i)).collect();
         let uses: Vec<SampleUse> = inside
             .iter()
             .zip(&in_core)
-            .map(|(&i, core)| {
+            .zip(&edges_aa)
+            .map(|((&i, core), edges)| {
                 let chosen = settings.continuum_ranges_aa.is_empty()
                     || *core
                     || within(&settings.continuum_ranges_aa, x[i]);
                 if !spectrum.good()[i] || within(&settings.excluded_aa, x[i]) {
                     SampleUse::Masked
-                } else if integrated(x[i]) {
+                } else if integrated(*edges) {
                     SampleUse::Integrated
                 } else if chosen {
                     SampleUse::Fitted

@@ -301,6 +301,15 @@ impl<'a> FittedGroup<'a> {
 
     fn note_integral(&self, fit: &BandFit, position: usize, caveats: &mut Vec<Caveat>) {
         let covered = self.integrals[position - self.group.bands.len()].covered;
+        if self.settings.clip_sigma.is_some() {
+            caveats.push(Caveat::Other {
+                code: "integral-not-clipped",
+                text: format!(
+                    "{}: hits of cosmic rays between its limits cannot be told from the band and are not dropped",
+                    fit.id
+                ),
+            });
+        }
         if covered < 0.97 {
             caveats.push(Caveat::Other {
                 code: "integral-gaps",
@@ -455,8 +464,8 @@ impl<'a> FittedGroup<'a> {
                 let mut total = continuum + bands.iter().sum::<f64>();
                 for b in &self.group.integrals {
                     let (low, high) = limits_aa(self.settings, *b);
-                    let inside =
-                        picked.uses[p] == SampleUse::Integrated && (low..=high).contains(&x);
+                    let (from, to) = picked.edges_aa[p];
+                    let inside = picked.uses[p] == SampleUse::Integrated && from < high && to > low;
                     bands.push(if inside { data - total } else { 0.0 });
                 }
                 total = continuum + bands.iter().sum::<f64>();

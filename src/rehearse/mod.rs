@@ -4,11 +4,13 @@
 //! Imports floors 0–6 and the analysis. Reads no file and prints nothing; never changes how a trial is
 //! analysed, apart from errors that the trials do not vary.
 
+mod completeness;
 mod share;
 mod tally;
 mod trial;
 mod truth;
 
+pub use completeness::{Completeness, CompletenessStep, FLUX_STEPS, completeness, injectable};
 pub use share::Share;
 pub use tally::{Quantity, Recovered};
 
@@ -59,6 +61,16 @@ pub struct Rehearsed {
     pub first_failure: Option<String>,
 }
 
+fn check(how: Rehearsal) -> Result<()> {
+    if (10..=1_000_000).contains(&how.trials) {
+        return Ok(());
+    }
+    Err(
+        Error::plan(format!("trials = {} is outside 10 to 1000000", how.trials))
+            .remedy("1000 trials give a coverage to ±1.5 %"),
+    )
+}
+
 /// Repeats the analysis on spectra that hold the fitted model and fresh noise. `tick` is called after
 /// every trial, from any thread. The result does not depend on the number of threads.
 ///
@@ -70,12 +82,7 @@ pub fn rehearse(
     how: Rehearsal,
     tick: &(dyn Fn() + Sync),
 ) -> Result<Rehearsed> {
-    if !(10..=1_000_000).contains(&how.trials) {
-        return Err(
-            Error::plan(format!("trials = {} is outside 10 to 1000000", how.trials))
-                .remedy("1000 trials give a coverage to ±1.5 %"),
-        );
-    }
+    check(how)?;
     let scene = Scene::new(spectra, settings, how)?;
     let outcomes: Vec<Result<Trial>> = (0..how.trials)
         .into_par_iter()

@@ -8,6 +8,7 @@ use crate::ground::{Result, Species};
 use crate::ratio::{Basis, DrawSettings};
 use crate::spectrum::Spectrum;
 
+#[derive(Clone)]
 /// One spectrum of a trial before noise, in the comet's frame.
 pub(super) struct TrueSpectrum {
     pub label: String,
@@ -23,9 +24,12 @@ pub(super) struct TrueSpectrum {
     pub pool: Vec<Option<usize>>,
     /// Residuals over errors, window by window.
     pub pools: Vec<Vec<f64>>,
+    /// Model of each band: identifier, and sample with flux density.
+    pub bands: Vec<(String, Vec<(usize, f64)>)>,
 }
 
 /// Everything that the trials share.
+#[derive(Clone)]
 pub(super) struct Scene {
     pub spectra: Vec<TrueSpectrum>,
     pub settings: Settings,
@@ -62,6 +66,27 @@ impl Scene {
             base,
             ratios,
         })
+    }
+}
+
+impl Scene {
+    /// Whether the band has a model of its own that can be made brighter.
+    pub(super) fn can_inject(&self, b: usize) -> bool {
+        let fit = &self.base.bands[b].fit;
+        fit.integral_aa.is_none() && fit.flux_erg_s_cm2.value != 0.0
+    }
+
+    /// The same scene with another true flux of one band.
+    pub(super) fn with_flux(&self, b: usize, flux_erg_s_cm2: f64) -> Self {
+        let mut out = self.clone();
+        let band = &self.base.bands[b];
+        let change = flux_erg_s_cm2 / band.fit.flux_erg_s_cm2.value - 1.0;
+        let spectrum = &mut out.spectra[band.spectrum];
+        let own = spectrum.bands.iter().find(|(id, _)| *id == band.fit.id);
+        for (i, value) in own.map_or(&[][..], |(_, model)| model) {
+            spectrum.clean_erg_s_cm2_aa[*i] += change * value;
+        }
+        out
     }
 }
 
@@ -137,6 +162,7 @@ impl TrueSpectrum {
             flagged: rest.good().iter().map(|g| !g).collect(),
             pool: vec![None; n],
             pools: Vec::new(),
+            bands: Vec::new(),
         };
         for window in fit.iter().flat_map(|f| &f.windows) {
             let used = window.samples.iter().filter(|s| s.used);
@@ -150,6 +176,11 @@ impl TrueSpectrum {
                 out.clean_erg_s_cm2_aa[i] = sample.total_erg_s_cm2_aa;
                 out.sigma_erg_s_cm2_aa[i] = sample.sigma_erg_s_cm2_aa;
                 out.pool[i] = Some(out.pools.len() - 1);
+            }
+            for (b, id) in window.bands.iter().enumerate() {
+                let model = (first..n).zip(&window.samples);
+                let model = model.map(|(i, s)| (i, s.bands_erg_s_cm2_aa[b]));
+                out.bands.push((id.clone(), model.collect()));
             }
         }
         out

@@ -7,6 +7,7 @@ mod alternatives;
 mod comparison_figures;
 mod comparison_table;
 mod comparison_text;
+mod completeness;
 mod csv_files;
 mod json;
 mod lines;
@@ -22,6 +23,7 @@ pub use alternatives::{
 pub use comparison_figures::{comparison_distance_figure, comparison_standing_figure};
 pub use comparison_table::{check_set_table, comparison_csv};
 pub use comparison_text::comparison_text;
+pub use completeness::{completeness_csv, completeness_figure, completeness_table};
 pub use csv_files::{bands_csv, fit_csv, ratios_csv, species_csv, summary_csv};
 pub use json::{Input, result_json};
 pub use lines::{excitation_figure, lines_csv};

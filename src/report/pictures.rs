@@ -60,7 +60,10 @@ fn panel(analysis: &Analysis, fit: &SpectrumFit, window: &WindowFit, aa: f64) ->
         let Some(band) = fit.bands.iter().find(|b| b.id == *id) else {
             continue;
         };
-        let y: Vec<f64> = grid.iter().map(|x| band.at(*x)).collect();
+        let y: Vec<f64> = match band.integral_aa {
+            Some(_) => summed(window, id, &grid),
+            None => grid.iter().map(|x| band.at(*x)).collect(),
+        };
         for (t, v) in total.iter_mut().zip(&y) {
             *t += v;
         }
@@ -98,6 +101,24 @@ fn panel(analysis: &Analysis, fit: &SpectrumFit, window: &WindowFit, aa: f64) ->
         bands,
         left_out: gaps(window, aa),
     }
+}
+
+/// What was summed up of an integrated band, straight between the samples.
+fn summed(window: &WindowFit, id: &str, grid: &[f64]) -> Vec<f64> {
+    let position = window.bands.iter().position(|b| b == id);
+    let samples = &window.samples;
+    let at = |i: usize| position.map_or(0.0, |p| samples[i].bands_erg_s_cm2_aa[p]);
+    grid.iter()
+        .map(|x| {
+            let after = samples.partition_point(|s| s.wavelength_aa <= *x);
+            if after == 0 || after == samples.len() {
+                return 0.0;
+            }
+            let (a, b) = (&samples[after - 1], &samples[after]);
+            let part = (x - a.wavelength_aa) / (b.wavelength_aa - a.wavelength_aa);
+            at(after - 1) + part * (at(after) - at(after - 1))
+        })
+        .collect()
 }
 
 /// Species with subscripts, or the identifier of a band without a species.

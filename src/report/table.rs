@@ -69,6 +69,7 @@ pub(super) fn grid(header: &[&str], rows: Vec<Vec<String>>) -> String {
 }
 
 fn bands(list: &[BandResult]) -> String {
+    let warm = list.iter().any(|b| b.fit.temperature_k.is_some());
     let rows = list
         .iter()
         .map(|b| {
@@ -81,7 +82,7 @@ fn bands(list: &[BandResult]) -> String {
                     f.flux_limit_erg_s_cm2.map_or_else(String::new, power)
                 )
             };
-            vec![
+            let mut row = vec![
                 f.id.clone(),
                 format!("{:.2}", f.centre_aa),
                 format!("{:.2}", f.fwhm_aa),
@@ -93,21 +94,30 @@ fn bands(list: &[BandResult]) -> String {
                 b.column_cm2
                     .filter(|_| f.detected)
                     .map_or_else(|| "–".to_owned(), pair),
-            ]
+            ];
+            if warm {
+                row.push(match f.temperature_k {
+                    Some((k, Some(sigma))) => format!("{k:.1} ± {sigma:.1}"),
+                    Some((k, None)) => format!("{k:.1} held"),
+                    None => "–".to_owned(),
+                });
+            }
+            row
         })
         .collect();
-    grid(
-        &[
-            "band",
-            "centre Å",
-            "FWHM Å",
-            "flux erg/s/cm²",
-            "S/N",
-            "g photons/s",
-            "column cm⁻²",
-        ],
-        rows,
-    )
+    let mut header = vec![
+        "band",
+        "centre Å",
+        "FWHM Å",
+        "flux erg/s/cm²",
+        "S/N",
+        "g photons/s",
+        "column cm⁻²",
+    ];
+    if warm {
+        header.push("T_rot K");
+    }
+    grid(&header, rows)
 }
 
 fn dust(list: &[DustResult]) -> String {
