@@ -9,8 +9,10 @@
 
 mod axis;
 mod canvas;
+mod corner;
 mod coverage;
 mod curve;
+mod density;
 mod fit;
 mod fit_panel;
 mod label;
@@ -26,6 +28,7 @@ mod text;
 mod thin;
 
 pub use axis::Scale;
+pub use corner::{CornerFigure, CornerRatio, corner_svg};
 pub use coverage::{CoverageFigure, CoveragePoint, CoverageRow, coverage_svg};
 pub use curve::{Curve, CurveFigure, Tick, VerticalMark, range_svg};
 pub use fit::{FitBand, FitFigure, FitPanel, fit_svg};

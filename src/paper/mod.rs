@@ -1,0 +1,35 @@
+//! Floor 8, an edge: everything a paper draft needs, from results of `measure` – figures for print,
+//! tables, a methods paragraph, references, a page for readers without the field's vocabulary.
+//!
+//! May import every floor but `cli`. Returns bytes; never reads or writes a file, and never words a
+//! number that does not come from the analysis or its settings.
+
+mod pictures;
+mod places;
+mod print;
+mod rounding;
+mod stamp;
+mod study;
+
+pub use stamp::{Hashed, Origin};
+pub use study::Study;
+
+use crate::ground::Result;
+use stamp::Stamp;
+
+/// A file of the kit: its name and content.
+pub type KitFile = (String, Vec<u8>);
+
+/// All files of the kit of one or several results.
+///
+/// # Errors
+/// A figure that cannot be drawn.
+pub fn kit(studies: &[Study]) -> Result<Vec<KitFile>> {
+    let stamp = Stamp::new(studies.iter().map(|s| s.origin.clone()));
+    let figures = pictures::figures(studies)?;
+    let mut files = Vec::new();
+    for f in pictures::printed(&figures, &stamp)? {
+        files.extend(f);
+    }
+    Ok(files)
+}
