@@ -34,9 +34,9 @@ pub struct CornerRatio {
 
 const EDGE_PT: f64 = 3.0;
 const RIGHT_PT: f64 = 8.0;
-const GAP_PT: f64 = 7.0;
+const GAP_PT: f64 = 8.0;
 /// Largest height of a panel, pt.
-const TALLEST_PT: f64 = 130.0;
+const TALLEST_PT: f64 = 104.0;
 /// Columns of a histogram.
 const COLUMNS: usize = 40;
 /// Share of the draws left outside at either end.
@@ -86,7 +86,7 @@ impl<'a> Layout<'a> {
             width.points() - 2.0 * EDGE_PT,
             3,
         );
-        let top = 2.0 * EDGE_PT + title.len() as f64 * (LINE_PT + 1.0) + 2.0 * LINE_PT;
+        let top = 2.0 * EDGE_PT + title.len() as f64 * (LINE_PT + 1.0) + 2.2 * LINE_PT;
         let mut left = EDGE_PT + LINE_PT + 22.0;
         let size = |left: f64| (width.points() - left - RIGHT_PT - (n - 1.0) * GAP_PT) / n;
         let height = f64::min(size(left), TALLEST_PT);
@@ -200,7 +200,7 @@ impl<'a> Layout<'a> {
             canvas.path(&[(x, panel.bottom()), (x, panel.top)], stroke);
         }
         let middle = panel.left + panel.width / 2.0;
-        for (line, lift) in [(&ratio.label, 1.45), (&ratio.value, 0.5)] {
+        for (line, lift) in [(&ratio.label, 1.6), (&ratio.value, 0.65)] {
             let text = elide(line, TICK_PT, false, panel.width + GAP_PT);
             let p = (middle, panel.top - lift * LINE_PT);
             canvas.text(&text, p, Type::new(TICK_PT, Anchor::Middle));

@@ -4,12 +4,16 @@
 //! May import every floor but `cli`. Returns bytes; never reads or writes a file, and never words a
 //! number that does not come from the analysis or its settings.
 
+mod ecsv;
+mod latex;
 mod pictures;
 mod places;
 mod print;
 mod rounding;
 mod stamp;
 mod study;
+mod table;
+mod tables;
 
 pub use stamp::{Hashed, Origin};
 pub use study::Study;
@@ -30,6 +34,13 @@ pub fn kit(studies: &[Study]) -> Result<Vec<KitFile>> {
     let mut files = Vec::new();
     for f in pictures::printed(&figures, &stamp)? {
         files.extend(f);
+    }
+    for t in tables::tables(studies) {
+        files.push((format!("{}.tex", t.name), t.tabular(&stamp).into_bytes()));
+        files.push((format!("{}-deluxe.tex", t.name), t.deluxe(&stamp).into_bytes()));
+    }
+    for (name, text) in ecsv::tables(studies, &stamp) {
+        files.push((name.to_owned(), text.into_bytes()));
     }
     Ok(files)
 }

@@ -137,7 +137,7 @@ fn word(species: &str) -> String {
 
 fn fit_caption(s: &Study) -> String {
     format!(
-        "Spectrum of {} with the fitted model. Points: flux density with 1σ errors in the rest frame of the comet; dashed: continuum; coloured: bands; black: total. Lower panels: residuals in units of the error. Grey samples were not used.",
+        "Spectrum of {} with the fitted model. Points: flux density with 1σ errors; line: model; dashed: continuum; shaded: bands. Wavelengths are in vacuum in the rest frame of the comet. Lower panels: residuals in units of the errors.",
         s.heading()
     )
 }

@@ -104,15 +104,28 @@ pub(super) fn bare(value: f64) -> Rounded {
     }
 }
 
-/// Median with the interval in parentheses: `0.158 (0.126–0.196)`.
-pub(super) fn interval_text(i: &Interval) -> String {
+/// A number with a fixed count of decimals.
+pub(super) fn plain_number(value: f64, decimals: i32) -> Rounded {
+    Rounded {
+        value: fixed(value, decimals),
+        errors: None,
+        exponent: 0,
+    }
+}
+
+/// Decimals that the narrower side of an interval deserves.
+pub(super) fn decimals_of_interval(i: &Interval) -> i32 {
     let error = (i.high68 - i.median).min(i.median - i.low68);
-    let usable = error.is_finite() && error > 0.0;
-    let decimals = if usable {
+    if error.is_finite() && error > 0.0 {
         decimals(error).clamp(0, 12)
     } else {
         BARE_DIGITS
-    };
+    }
+}
+
+/// Median with the interval in parentheses: `0.158 (0.126–0.196)`.
+pub(super) fn interval_text(i: &Interval) -> String {
+    let decimals = decimals_of_interval(i);
     let text = |v: f64| fixed(v, decimals);
     format!("{} ({}–{})", text(i.median), text(i.low68), text(i.high68))
 }
