@@ -146,7 +146,8 @@ impl<'a> Layout<'a> {
         let panel = self.panel(row, column);
         let (a, b) = (&self.figure.ratios[column], &self.figure.ratios[row]);
         let points = a.draws.iter().zip(&b.draws);
-        let density = Density::of(points.map(|(x, y)| (panel.x.fraction(*x), panel.y.fraction(*y))));
+        let density =
+            Density::of(points.map(|(x, y)| (panel.x.fraction(*x), panel.y.fraction(*y))));
         let place = |(x, y): (f64, f64)| {
             (
                 panel.left + x * panel.width,

@@ -145,7 +145,11 @@ mod tests {
         let size = |p: &(f64, f64)| (p.0 - 0.5).hypot(p.1 - 0.5);
         let line = d.outline(level);
         assert!(line.len() > 40);
-        assert!(line.iter().flatten().all(|p| (size(p) - 0.182).abs() < 0.03));
+        assert!(
+            line.iter()
+                .flatten()
+                .all(|p| (size(p) - 0.182).abs() < 0.03)
+        );
     }
 
     #[test]

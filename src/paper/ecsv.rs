@@ -41,33 +41,78 @@ const BANDS: [Field; 12] = [
     field("band", "", "string", "band identifier"),
     field("species", "", "string", "species"),
     field("centre", "Angstrom", "float64", "rest centre in vacuum"),
-    field("centre_sigma", "Angstrom", "float64", "its error; missing when held"),
+    field(
+        "centre_sigma",
+        "Angstrom",
+        "float64",
+        "its error; missing when held",
+    ),
     field("fwhm", "Angstrom", "float64", "full width at half maximum"),
-    field("fwhm_sigma", "Angstrom", "float64", "its error; missing when held"),
+    field(
+        "fwhm_sigma",
+        "Angstrom",
+        "float64",
+        "its error; missing when held",
+    ),
     field("flux", FLUX, "float64", "band flux"),
     field("flux_sigma", FLUX, "float64", "its error from the fit"),
-    field("flux_limit", FLUX, "float64", "upper limit when not detected"),
-    field("g", "ph / s", "float64", "fluorescence efficiency per molecule at the comet"),
-    field("column", COLUMN, "float64", "mean column density in the aperture"),
+    field(
+        "flux_limit",
+        FLUX,
+        "float64",
+        "upper limit when not detected",
+    ),
+    field(
+        "g",
+        "ph / s",
+        "float64",
+        "fluorescence efficiency per molecule at the comet",
+    ),
+    field(
+        "column",
+        COLUMN,
+        "float64",
+        "mean column density in the aperture",
+    ),
     field("column_sigma", COLUMN, "float64", "its error from the fit"),
 ];
 
 const SPECIES: [Field; 9] = [
     field("species", "", "string", "species"),
     field("detected", "", "bool", "detected"),
-    field("column", COLUMN, "float64", "mean column density in the aperture"),
+    field(
+        "column",
+        COLUMN,
+        "float64",
+        "mean column density in the aperture",
+    ),
     field("column_sigma", COLUMN, "float64", "its full error"),
     field("production", RATE, "float64", "production rate"),
     field("production_sigma", RATE, "float64", "its full error"),
-    field("parent_length", "km", "float64", "scale length of the parent, or of a species from the nucleus"),
-    field("daughter_length", "km", "float64", "scale length of the observed daughter"),
+    field(
+        "parent_length",
+        "km",
+        "float64",
+        "scale length of the parent, or of a species from the nucleus",
+    ),
+    field(
+        "daughter_length",
+        "km",
+        "float64",
+        "scale length of the observed daughter",
+    ),
     field("speed", "km / s", "float64", "expansion speed"),
 ];
 
 const RATIOS: [Field; 13] = [
     field("of", "", "string", "numerator"),
     field("to", "", "string", "denominator"),
-    field("basis", "", "string", "production rates or column densities"),
+    field(
+        "basis",
+        "",
+        "string",
+        "production rates or column densities",
+    ),
     field("kind", "", "string", "value, upper, lower or unconstrained"),
     field("median", "", "float64", "median"),
     field("low68", "", "float64", "15.87 % point"),
@@ -77,7 +122,12 @@ const RATIOS: [Field; 13] = [
     field("limit", "", "float64", "one-sided 99.7 % limit"),
     field("comets", "", "int64", "published comets compared with"),
     field("percentile", "%", "float64", "share of them below"),
-    field("heliocentric_distance", "AU", "float64", "heliocentric distance of the comet"),
+    field(
+        "heliocentric_distance",
+        "AU",
+        "float64",
+        "heliocentric distance of the comet",
+    ),
 ];
 
 /// `bands.ecsv`, `species.ecsv`, `ratios.ecsv`.
@@ -163,7 +213,9 @@ fn bands(s: &Study) -> Vec<Vec<String>> {
         let f = &b.fit;
         vec![
             f.id.clone(),
-            b.species.as_ref().map_or_else(String::new, ToString::to_string),
+            b.species
+                .as_ref()
+                .map_or_else(String::new, ToString::to_string),
             number(f.centre_aa),
             number(f.centre_sigma_aa),
             number(f.fwhm_aa),
@@ -182,7 +234,9 @@ fn bands(s: &Study) -> Vec<Vec<String>> {
 fn species(s: &Study) -> Vec<Vec<String>> {
     let row = |r: &crate::analysis::SpeciesResult| {
         let mut all = s.settings.species.iter();
-        let coma = all.find(|t| t.species == r.species).and_then(|t| t.coma.as_ref());
+        let coma = all
+            .find(|t| t.species == r.species)
+            .and_then(|t| t.coma.as_ref());
         vec![
             r.species.to_string(),
             if r.detected { "True" } else { "False" }.to_owned(),

@@ -4,8 +4,10 @@
 //! May import every floor but `cli`. Returns bytes; never reads or writes a file, and never words a
 //! number that does not come from the analysis or its settings.
 
+mod bib;
 mod ecsv;
 mod latex;
+mod methods;
 mod pictures;
 mod places;
 mod print;
@@ -19,6 +21,7 @@ pub use stamp::{Hashed, Origin};
 pub use study::Study;
 
 use crate::ground::Result;
+use bib::References;
 use stamp::Stamp;
 
 /// A file of the kit: its name and content.
@@ -37,10 +40,25 @@ pub fn kit(studies: &[Study]) -> Result<Vec<KitFile>> {
     }
     for t in tables::tables(studies) {
         files.push((format!("{}.tex", t.name), t.tabular(&stamp).into_bytes()));
-        files.push((format!("{}-deluxe.tex", t.name), t.deluxe(&stamp).into_bytes()));
+        files.push((
+            format!("{}-deluxe.tex", t.name),
+            t.deluxe(&stamp).into_bytes(),
+        ));
     }
     for (name, text) in ecsv::tables(studies, &stamp) {
         files.push((name.to_owned(), text.into_bytes()));
     }
+    let mut refs = References::default();
+    let text: Vec<(String, Vec<methods::Paragraph>)> = studies
+        .iter()
+        .map(|s| (s.heading(), methods::methods(s, &mut refs)))
+        .collect();
+    let mut push = |name: &str, text: String| files.push((name.to_owned(), text.into_bytes()));
+    push(
+        "methods.md",
+        methods::markdown(&text, &refs, &stamp.comment("")),
+    );
+    push("methods.tex", methods::latex(&text, &stamp.comment("%")));
+    push("sources.bib", refs.bib(&stamp));
     Ok(files)
 }

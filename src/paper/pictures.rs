@@ -62,7 +62,12 @@ pub(super) fn figures(studies: &[Study]) -> Result<Vec<Figure>> {
     }
     let places = places(studies);
     for c in &places {
-        if c.rows.iter().filter(|e| e.heliocentric_au.is_some()).count() < FEWEST_POINTS {
+        if c.rows
+            .iter()
+            .filter(|e| e.heliocentric_au.is_some())
+            .count()
+            < FEWEST_POINTS
+        {
             continue;
         }
         let name = format!("distance-{}-{}", word(c.of.as_str()), word(c.to.as_str()));

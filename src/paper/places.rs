@@ -15,9 +15,9 @@ pub(super) fn places(studies: &[Study]) -> Vec<RatioComparison> {
     let subjects: Vec<Subject> = studies.iter().flat_map(Study::subjects).collect();
     let mut out: Vec<RatioComparison> = Vec::new();
     for s in &subjects {
-        let known = out.iter().any(|c| {
-            c.label == s.label && c.of == s.of && c.to == s.to && c.basis == s.basis
-        });
+        let known = out
+            .iter()
+            .any(|c| c.label == s.label && c.of == s.of && c.to == s.to && c.basis == s.basis);
         if !known && let Some(found) = place(tables, &subjects, s) {
             out.push(found);
         }

@@ -155,15 +155,20 @@ impl Table {
             self.columns.iter().map(f).collect::<Vec<_>>().join(" & ")
         };
         let names = heads(&|c| tex(&c.title));
-        let units = heads(&|c| {
-            if c.unit.is_empty() {
-                String::new()
-            } else {
-                format!("({})", tex(&c.unit))
-            }
-        });
+        let units = if self.columns.iter().all(|c| c.unit.is_empty()) {
+            String::new()
+        } else {
+            let unit = |c: &Column| {
+                if c.unit.is_empty() {
+                    String::new()
+                } else {
+                    format!("({})", tex(&c.unit))
+                }
+            };
+            heads(&unit) + " \\\\\n"
+        };
         format!(
-            "{}\\begin{{tabular}}{{{}}}\n\\hline\\hline\n{names} \\\\\n{units} \\\\\n\\hline\n{} \\\\\n\\hline\n\\end{{tabular}}\n",
+            "{}\\begin{{tabular}}{{{}}}\n\\hline\\hline\n{names} \\\\\n{units}\\hline\n{} \\\\\n\\hline\n\\end{{tabular}}\n",
             stamp.comment("%"),
             self.alignment(),
             self.body()

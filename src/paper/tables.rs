@@ -83,9 +83,9 @@ fn band(b: &BandResult, aa: f64) -> Vec<Cell> {
     };
     let (flux, column) = if f.detected {
         let v = f.flux_erg_s_cm2;
-        let column = b.column_cm2.map_or(Cell::Blank, |c| {
-            Cell::value(c.value, c.sigma, c.sigma)
-        });
+        let column = b
+            .column_cm2
+            .map_or(Cell::Blank, |c| Cell::value(c.value, c.sigma, c.sigma));
         (Cell::value(v.value, v.sigma, v.sigma), column)
     } else {
         let limit = f.flux_limit_erg_s_cm2;
@@ -99,7 +99,7 @@ fn band(b: &BandResult, aa: f64) -> Vec<Cell> {
     });
     let noise = f.flux_erg_s_cm2.signal_to_noise();
     vec![
-        Cell::text(f.id.clone()),
+        Cell::text(band_name(b)),
         measured(f.centre_aa, f.centre_sigma_aa),
         measured(f.fwhm_aa, f.fwhm_sigma_aa),
         flux,
@@ -107,6 +107,23 @@ fn band(b: &BandResult, aa: f64) -> Vec<Cell> {
         g,
         column,
     ]
+}
+
+/// `CO₂ 4.26 µm` for `CO2-4.26um`, `CN 3883 Å` for `CN-3883`; other identifiers as they are.
+pub(super) fn band_name(b: &BandResult) -> String {
+    let id = super::latex::harmless(&b.fit.id);
+    let Some(species) = &b.species else {
+        return id;
+    };
+    let Some(rest) = id.strip_prefix(&format!("{species}-")) else {
+        return id;
+    };
+    let is_number = |t: &str| t.parse::<f64>().is_ok_and(|v| v > 0.0);
+    match rest.strip_suffix("um") {
+        Some(n) if is_number(n) => format!("{} {n} µm", species.pretty()),
+        None if is_number(rest) => format!("{} {rest} Å", species.pretty()),
+        _ => id,
+    }
 }
 
 /// A wavelength or width without error: digits that a reader can use.
@@ -164,7 +181,7 @@ fn ratios(studies: &[Study]) -> Table {
         column("Ratio", ""),
         column("Value", ""),
         column("95 % interval", ""),
-        column("Of", ""),
+        column("Basis", ""),
         column("Comets", ""),
         column("Percentile", ""),
     ];
@@ -174,7 +191,7 @@ fn ratios(studies: &[Study]) -> Table {
     Table {
         name: "ratios",
         caption: format!("Abundance ratios of {}", whose(studies)),
-        note: "Medians with 68.3 % intervals; limits are one-sided at 99.7 %. Of: ratio of production rates or of column densities. Comets: published comets with this ratio, one measurement each. Percentile: share of them that lies below, with its 68 % interval.".to_owned(),
+        note: "Medians with 68.3 % intervals; limits are one-sided at 99.7 %. Basis: ratio of production rates or of column densities. Comets: published comets with this ratio, one measurement each. Percentile: share of them that lies below, with its 68 % interval.".to_owned(),
         columns,
         rows,
     }

@@ -37,8 +37,7 @@ pub(super) struct Loaded {
 /// # Errors
 /// The file is no result; its plan or a spectrum is missing; the analysis refuses.
 pub(super) fn load(path: &Path) -> Result<Loaded> {
-    let recorded =
-        std::fs::read_to_string(path).map_err(|e| Error::io("cannot read", path, &e))?;
+    let recorded = std::fs::read_to_string(path).map_err(|e| Error::io("cannot read", path, &e))?;
     let head = head(path, &recorded)?;
     let folder = path.parent().unwrap_or(Path::new(""));
     let plan_path = folder.join(PLAN);
@@ -48,7 +47,9 @@ pub(super) fn load(path: &Path) -> Result<Loaded> {
             plan_path.display()
         ))
         .in_file(path)
-        .remedy(format!("keep {PLAN} beside result.json, or run comagauge measure again")));
+        .remedy(format!(
+            "keep {PLAN} beside result.json, or run comagauge measure again"
+        )));
     }
     let plan_sha256 = hash(&plan_path)?.sha256;
     let mut file = read_plan(&plan_path)?;
@@ -100,7 +101,10 @@ fn head(path: &Path, text: &str) -> Result<Recorded> {
     let head: Recorded =
         serde_json::from_str(text).map_err(|e| foreign(e.to_string(), Some(e.line())))?;
     if !head.program.starts_with("comagauge ") {
-        return Err(foreign(format!("it was written by {:?}", head.program), None));
+        return Err(foreign(
+            format!("it was written by {:?}", head.program),
+            None,
+        ));
     }
     Ok(head)
 }
@@ -141,12 +145,7 @@ fn changed(recorded: &[Hashed], now: &[Input]) -> Vec<String> {
         .iter()
         .zip(now)
         .filter(|(old, new)| old.sha256 != new.sha256)
-        .map(|(old, new)| {
-            format!(
-                "{}: sha256 was {}, is {}",
-                new.path, old.sha256, new.sha256
-            )
-        })
+        .map(|(old, new)| format!("{}: sha256 was {}, is {}", new.path, old.sha256, new.sha256))
         .collect();
     if recorded.len() != now.len() {
         out.push(format!(

@@ -34,12 +34,17 @@ pub(super) fn profile(s: &Study) -> Option<CurveFigure> {
             let mut all = s.settings.species.iter();
             let coma = all.find(|t| t.species == result.species)?.coma.as_ref()?;
             let usable = result.detected && q_per_s > 0.0;
-            let column = |r: &f64| {
-                q_per_s / coma.speed_km_s * column_km(&coma.lengths, *r) / CM2_PER_KM2
-            };
+            let column =
+                |r: &f64| q_per_s / coma.speed_km_s * column_km(&coma.lengths, *r) / CM2_PER_KM2;
             let y: Vec<f64> = rho.iter().map(column).collect();
             let inverse = |i: usize| y[0] * rho[0] / rho[i];
-            let visible = (0..POINTS).map(|i| if y[i] > FALLEN * inverse(i) { y[i] } else { f64::NAN });
+            let visible = (0..POINTS).map(|i| {
+                if y[i] > FALLEN * inverse(i) {
+                    y[i]
+                } else {
+                    f64::NAN
+                }
+            });
             usable.then(|| Curve {
                 label: result.species.pretty(),
                 x: rho.clone(),

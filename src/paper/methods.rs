@@ -1,0 +1,381 @@
+//! The methods paragraph, from the settings and numbers of the analysis itself.
+
+use super::bib::{References, sources_of};
+use super::latex::harmless;
+use super::rounding::number;
+use super::stamp::file_name;
+use super::study::Study;
+use crate::analysis::BandResult;
+use crate::comparison::rows_of;
+use crate::fit::Resolution;
+use crate::frame::{Aperture, Frame, km_per_arcsec};
+use crate::ratio::Basis;
+use crate::tables::Source;
+
+/// A paragraph with its heading, citations marked; plain Unicode.
+pub(super) struct Paragraph {
+    /// Heading.
+    pub title: String,
+    /// Text.
+    pub text: String,
+}
+
+/// All paragraphs of one result.
+pub(super) fn methods(s: &Study, refs: &mut References) -> Vec<Paragraph> {
+    let mut out = vec![
+        paragraph("Observation", observation(s)),
+        paragraph("Band fluxes", fluxes(s)),
+        paragraph("Column densities and production rates", rates(s, refs)),
+        paragraph("Uncertainties", uncertainties(s)),
+    ];
+    if s.analysis.ratios.iter().any(|r| !r.known.is_empty()) {
+        out.push(paragraph("Comparison", comparison(s, refs)));
+    }
+    out
+}
+
+fn paragraph(title: &str, text: String) -> Paragraph {
+    Paragraph {
+        title: title.to_owned(),
+        text,
+    }
+}
+
+/// `a, b and c`.
+fn list(items: &[String]) -> String {
+    match items {
+        [] => String::new(),
+        [one] => one.clone(),
+        [most @ .., last] => format!("{} and {last}", most.join(", ")),
+    }
+}
+
+fn signed(v: f64) -> String {
+    format!("{v:+}").replace('-', "−")
+}
+
+fn per_cent(share: f64) -> String {
+    format!("{} %", number(100.0 * share))
+}
+
+fn observation(s: &Study) -> String {
+    let g = &s.settings.geometry;
+    let km = km_per_arcsec(g.observer_au);
+    let aperture = match s.settings.aperture {
+        Aperture::Circle { radius_arcsec } => format!(
+            "a circle of {radius_arcsec}″ radius, {} km at the comet",
+            number(radius_arcsec * km)
+        ),
+        Aperture::Slit {
+            width_arcsec,
+            length_arcsec,
+            offset_across_arcsec,
+            offset_along_arcsec,
+        } => {
+            let offset = if offset_across_arcsec == 0.0 && offset_along_arcsec == 0.0 {
+                "centred on the nucleus".to_owned()
+            } else {
+                format!(
+                    "its centre {offset_across_arcsec}″ across and {offset_along_arcsec}″ along it from the nucleus"
+                )
+            };
+            format!(
+                "a rectangle of {width_arcsec}″ × {length_arcsec}″, {} km × {} km at the comet, {offset}",
+                number(width_arcsec * km),
+                number(length_arcsec * km)
+            )
+        }
+    };
+    let orbit = if s.settings.sky.is_some() {
+        " These numbers follow from its orbit."
+    } else {
+        ""
+    };
+    format!(
+        "{} was at a heliocentric distance of {} au (rate {} km s⁻¹) and {} au from the observer (rate {} km s⁻¹).{orbit} The flux is that within {aperture}. {}",
+        harmless(&s.heading()),
+        g.heliocentric_au,
+        signed(g.heliocentric_km_s),
+        g.observer_au,
+        signed(g.observer_km_s),
+        frames(s)
+    )
+}
+
+fn frames(s: &Study) -> String {
+    let shift = |f: &Frame| match f {
+        Frame::Observer => format!(
+            "shifted by the observer-centred velocity of {} km s⁻¹",
+            signed(s.settings.geometry.observer_km_s)
+        ),
+        Frame::Comet => "given in the rest frame of the comet".to_owned(),
+        Frame::Shifted { velocity_km_s } => {
+            format!("shifted by {} km s⁻¹", signed(*velocity_km_s))
+        }
+    };
+    let mut kinds: Vec<String> = s.settings.spectra.iter().map(|t| shift(&t.frame)).collect();
+    kinds.dedup();
+    format!(
+        "Wavelengths are vacuum ones in the rest frame of the comet ({}).",
+        list(&kinds)
+    )
+}
+
+fn fluxes(s: &Study) -> String {
+    let windows: Vec<String> = s
+        .analysis
+        .fits
+        .iter()
+        .flat_map(|(_, fit)| &fit.windows)
+        .map(|w| {
+            format!(
+                "{} (continuum of order {}, χ²/ν = {:.1}/{}{})",
+                range(w.window_aa),
+                w.continuum_order,
+                w.chi2,
+                w.dof,
+                if w.errors_estimated {
+                    ", errors estimated from the scatter"
+                } else {
+                    ""
+                }
+            )
+        })
+        .collect();
+    let resolution = s.settings.spectra.first().and_then(|t| t.fit.resolution);
+    let instrument = match resolution {
+        Some(Resolution::ResolvingPower(r)) => {
+            format!(" The intrinsic widths were widened by the instrument (λ/FWHM = {r}).")
+        }
+        Some(Resolution::FwhmAa(fwhm)) => {
+            format!(" The intrinsic widths were widened by the instrument (FWHM {fwhm} Å).")
+        }
+        None => String::new(),
+    };
+    let shape = if s
+        .settings
+        .bands
+        .iter()
+        .any(|b| b.model.structure.lines().len() > 1)
+    {
+        "Gaussians or, where set so, envelopes of rotational lines"
+    } else {
+        "Gaussians"
+    };
+    let free = s
+        .settings
+        .spectra
+        .first()
+        .map_or(10.0, |t| t.fit.free_shape_sigma);
+    format!(
+        "Bands were modelled as {shape} on a Chebyshev polynomial for the continuum, together by weighted least squares in the windows {}.{instrument} Centres and widths were fitted from a signal-to-noise ratio of {free} and held below. A band counts as detected from {} times its error; below, limits are one-sided at 99.7 %.",
+        list(&windows),
+        s.settings.detection_sigma
+    )
+}
+
+fn range((low, high): (f64, f64)) -> String {
+    if low >= 10_000.0 {
+        format!("{:.3}–{:.3} µm", low / 1e4, high / 1e4)
+    } else {
+        format!("{low:.0}–{high:.0} Å")
+    }
+}
+
+fn rates(s: &Study, refs: &mut References) -> String {
+    let g: Vec<String> = s
+        .analysis
+        .bands
+        .iter()
+        .filter_map(|b| efficiency(s, b, refs))
+        .collect();
+    let mut out = format!(
+        "Fluxes were turned into molecules with fluorescence efficiencies at the heliocentric distance of the comet, in photons s⁻¹ molecule⁻¹: {}.",
+        list(&g)
+    );
+    let without: Vec<String> = s
+        .analysis
+        .bands
+        .iter()
+        .filter(|b| b.efficiency.is_none())
+        .map(|b| harmless(&b.fit.id))
+        .collect();
+    if !without.is_empty() {
+        out.push_str(&format!(" No efficiency is known for {}.", list(&without)));
+    }
+    let haser = refs.cite_haser();
+    let lengths: Vec<String> = s
+        .settings
+        .species
+        .iter()
+        .filter_map(|t| {
+            let coma = t.coma.as_ref()?;
+            let daughter = coma.lengths.daughter_km.map_or_else(String::new, |d| {
+                format!(" (parent) and {} km (daughter)", number(d))
+            });
+            let cite = refs.cite(&sources_of(s, &coma.source));
+            Some(format!(
+                "{} {} km{daughter} at {} km s⁻¹{cite}",
+                t.species.pretty(),
+                number(coma.lengths.parent_km),
+                number(coma.speed_km_s)
+            ))
+        })
+        .collect();
+    if !lengths.is_empty() {
+        out.push_str(&format!(
+            " Production rates follow from the Haser model{haser}, integrated over the aperture, with these scale lengths at the comet and expansion speeds: {}.",
+            lengths.join("; ")
+        ));
+    }
+    out
+}
+
+fn efficiency(s: &Study, b: &BandResult, refs: &mut References) -> Option<String> {
+    let g = b.efficiency.as_ref()?;
+    let cite = refs.cite(&sources_of(s, &g.source));
+    let source = if cite.is_empty() {
+        format!(" ({})", harmless(&g.source))
+    } else {
+        cite
+    };
+    Some(format!(
+        "{} for {} (error {}){source}",
+        number(g.g_photons_s),
+        super::tables::band_name(b),
+        per_cent(g.relative_sigma)
+    ))
+}
+
+fn uncertainties(s: &Study) -> String {
+    let mut calibration: Vec<String> = s
+        .settings
+        .spectra
+        .iter()
+        .map(|t| per_cent(t.calibration_sigma))
+        .collect();
+    calibration.dedup();
+    let mut lengths: Vec<String> = s
+        .settings
+        .species
+        .iter()
+        .filter_map(|t| t.coma.as_ref())
+        .map(|c| per_cent(c.length_sigma))
+        .collect();
+    lengths.sort();
+    lengths.dedup();
+    let coma = if lengths.is_empty() {
+        String::new()
+    } else {
+        format!(
+            ", scale lengths ({}) and the expansion speed common to all species ({})",
+            list(&lengths),
+            per_cent(s.settings.speed_sigma)
+        )
+    };
+    format!(
+        "Errors come from {} random draws (seed {}) shared by all species, so that what two species have in common cancels in their ratio: band fluxes from a normal distribution with the full covariance of the fit, and log-normal factors for the flux calibration ({}), the efficiencies{coma}. Ratios are medians with 68.3 % intervals; limits of ratios are one-sided at 99.7 %.",
+        s.settings.draws.count,
+        s.settings.draws.seed,
+        list(&calibration)
+    )
+}
+
+fn comparison(s: &Study, refs: &mut References) -> String {
+    let mut parts = Vec::new();
+    for r in s.analysis.ratios.iter().filter(|r| !r.known.is_empty()) {
+        let (of, to) = (&r.ratio.of, &r.ratio.to);
+        let cited = compiled(s, of, to, r.ratio.basis, |comet| {
+            r.known.iter().any(|e| e.comet == comet)
+        });
+        let n = r.known.len();
+        let noun = if n == 1 { "comet" } else { "comets" };
+        parts.push(format!(
+            "{}/{} with {n} {noun}{}",
+            of.pretty(),
+            to.pretty(),
+            refs.cite(&cited)
+        ));
+    }
+    format!(
+        "Ratios were compared with published ones: {}. Each comet counts once, with a value before a limit and then the measurement nearest in heliocentric distance. Limits enter the distribution as censored data (product-limit estimator). Percentile intervals (68.3 %) hold the error of the ratio and the number of comets.",
+        parts.join("; ")
+    )
+}
+
+/// Where the rows were read: the compilation where there is one, else the original.
+fn compiled(
+    s: &Study,
+    of: &crate::ground::Species,
+    to: &crate::ground::Species,
+    basis: Basis,
+    takes: impl Fn(&str) -> bool,
+) -> Vec<Source> {
+    let mut out: Vec<Source> = Vec::new();
+    for row in rows_of(&s.tables, of, to, basis).filter(|r| takes(&r.comet)) {
+        let key = row.compiled_in.as_deref().unwrap_or(&row.provenance.source);
+        if let Some(source) = s.tables.source(key)
+            && !out.iter().any(|o| o.key == source.key)
+        {
+            out.push(source.clone());
+        }
+    }
+    out
+}
+
+/// The text for people who write in plain text: citations as keys in brackets, references below.
+pub(super) fn markdown(
+    studies: &[(String, Vec<Paragraph>)],
+    refs: &References,
+    lead: &str,
+) -> String {
+    let mut out = format!("<!--\n{lead}-->\n");
+    for (heading, paragraphs) in studies {
+        out.push_str(&format!("\n## Methods: {}\n", one_line(heading)));
+        for p in paragraphs {
+            let text = super::latex::cited(&p.text, str::to_owned, |keys| {
+                let keys: Vec<String> = keys.split(',').map(|k| format!("@{k}")).collect();
+                format!("[{}]", keys.join("; "))
+            });
+            out.push_str(&format!("\n**{}.** {text}\n", p.title));
+        }
+    }
+    out.push_str("\n## References\n\n");
+    for s in refs.used() {
+        out.push_str(&format!("* @{}: {}\n", s.key, s.reference));
+    }
+    out
+}
+
+/// The text as LaTeX paragraphs with `\citep`.
+pub(super) fn latex(studies: &[(String, Vec<Paragraph>)], lead: &str) -> String {
+    let mut out = lead.to_owned();
+    for (heading, paragraphs) in studies {
+        out.push_str(&format!("\n% {}\n", one_line(heading)));
+        for p in paragraphs {
+            out.push_str(&format!(
+                "\\paragraph{{{}}}\n{}\n\n",
+                super::latex::tex(&p.title),
+                super::latex::tex_with_citations(&p.text)
+            ));
+        }
+    }
+    out
+}
+
+fn one_line(text: &str) -> String {
+    text.chars()
+        .map(|c| if c.is_control() { ' ' } else { c })
+        .collect()
+}
+
+/// The name of an input for running text.
+pub(super) fn input_names(s: &Study) -> String {
+    let names: Vec<String> = s
+        .origin
+        .inputs
+        .iter()
+        .map(|i| harmless(file_name(&i.path)))
+        .collect();
+    list(&names)
+}
