@@ -3,14 +3,15 @@
 use super::bib::{References, sources_of};
 use super::latex::harmless;
 use super::rounding::number;
-use super::stamp::file_name;
 use super::study::Study;
-use crate::analysis::BandResult;
+use crate::analysis::{BandResult, RatioResult};
 use crate::comparison::rows_of;
 use crate::fit::Resolution;
 use crate::frame::{Aperture, Frame, km_per_arcsec};
-use crate::ratio::Basis;
 use crate::tables::Source;
+
+/// Relative difference of a published value before and after its logarithm.
+const SAME: f64 = 1e-9;
 
 /// A paragraph with its heading, citations marked; plain Unicode.
 pub(super) struct Paragraph {
@@ -42,7 +43,7 @@ fn paragraph(title: &str, text: String) -> Paragraph {
 }
 
 /// `a, b and c`.
-fn list(items: &[String]) -> String {
+pub(super) fn list(items: &[String]) -> String {
     match items {
         [] => String::new(),
         [one] => one.clone(),
@@ -55,7 +56,8 @@ fn signed(v: f64) -> String {
 }
 
 fn per_cent(share: f64) -> String {
-    format!("{} %", number(100.0 * share))
+    let text = format!("{:.1}", 100.0 * share);
+    format!("{} %", text.strip_suffix(".0").unwrap_or(&text))
 }
 
 fn observation(s: &Study) -> String {
@@ -204,31 +206,39 @@ fn rates(s: &Study, refs: &mut References) -> String {
         out.push_str(&format!(" No efficiency is known for {}.", list(&without)));
     }
     let haser = refs.cite_haser();
-    let lengths: Vec<String> = s
-        .settings
-        .species
-        .iter()
-        .filter_map(|t| {
-            let coma = t.coma.as_ref()?;
-            let daughter = coma.lengths.daughter_km.map_or_else(String::new, |d| {
-                format!(" (parent) and {} km (daughter)", number(d))
-            });
-            let cite = refs.cite(&sources_of(s, &coma.source));
-            Some(format!(
-                "{} {} km{daughter} at {} km s⁻¹{cite}",
-                t.species.pretty(),
-                number(coma.lengths.parent_km),
-                number(coma.speed_km_s)
-            ))
-        })
-        .collect();
+    let lengths = scale_lengths(s, refs);
     if !lengths.is_empty() {
         out.push_str(&format!(
-            " Production rates follow from the Haser model{haser}, integrated over the aperture, with these scale lengths at the comet and expansion speeds: {}.",
+            " Production rates follow from the Haser model{haser}, integrated over the aperture, with these scale lengths at the comet (for daughters of the parent and of the species itself) and expansion speeds: {}.",
             lengths.join("; ")
         ));
     }
     out
+}
+
+/// Scale lengths, species with the same source and speed together.
+fn scale_lengths(s: &Study, refs: &mut References) -> Vec<String> {
+    let mut groups: Vec<(&str, f64, Vec<String>)> = Vec::new();
+    for t in &s.settings.species {
+        let Some(coma) = &t.coma else { continue };
+        let lengths = match coma.lengths.daughter_km {
+            Some(d) => format!("{} and {} km", number(coma.lengths.parent_km), number(d)),
+            None => format!("{} km", number(coma.lengths.parent_km)),
+        };
+        let text = format!("{} {lengths}", t.species.pretty());
+        let same = |g: &&mut (&str, f64, Vec<String>)| {
+            g.0 == coma.source.as_str() && g.1 == coma.speed_km_s
+        };
+        match groups.iter_mut().find(same) {
+            Some(group) => group.2.push(text),
+            None => groups.push((&coma.source, coma.speed_km_s, vec![text])),
+        }
+    }
+    let said = |(source, speed, texts): (&str, f64, Vec<String>)| {
+        let cite = refs.cite(&sources_of(s, source));
+        format!("{}, at {} km s⁻¹{cite}", texts.join(", "), number(speed))
+    };
+    groups.into_iter().map(said).collect()
 }
 
 fn efficiency(s: &Study, b: &BandResult, refs: &mut References) -> Option<String> {
@@ -285,9 +295,7 @@ fn comparison(s: &Study, refs: &mut References) -> String {
     let mut parts = Vec::new();
     for r in s.analysis.ratios.iter().filter(|r| !r.known.is_empty()) {
         let (of, to) = (&r.ratio.of, &r.ratio.to);
-        let cited = compiled(s, of, to, r.ratio.basis, |comet| {
-            r.known.iter().any(|e| e.comet == comet)
-        });
+        let cited = compiled(s, r);
         let n = r.known.len();
         let noun = if n == 1 { "comet" } else { "comets" };
         parts.push(format!(
@@ -303,18 +311,20 @@ fn comparison(s: &Study, refs: &mut References) -> String {
     )
 }
 
-/// Where the rows were read: the compilation where there is one, else the original.
-fn compiled(
-    s: &Study,
-    of: &crate::ground::Species,
-    to: &crate::ground::Species,
-    basis: Basis,
-    takes: impl Fn(&str) -> bool,
-) -> Vec<Source> {
+/// Where the rows that had a vote were read: the compilation where there is one, else the original.
+fn compiled(s: &Study, r: &RatioResult) -> Vec<Source> {
     let mut out: Vec<Source> = Vec::new();
-    for row in rows_of(&s.tables, of, to, basis).filter(|r| takes(&r.comet)) {
-        let key = row.compiled_in.as_deref().unwrap_or(&row.provenance.source);
+    for row in rows_of(&s.tables, &r.ratio.of, &r.ratio.to, r.ratio.basis) {
+        let linear = 10f64.powf(row.log10_value());
+        let voted = r.known.iter().any(|e| {
+            e.comet == row.comet
+                && e.heliocentric_au == row.r_h_au
+                && (e.value / linear - 1.0).abs() < SAME
+        });
+        let key = row.compiled_in.as_deref();
+        let key = key.unwrap_or(&row.provenance.source);
         if let Some(source) = s.tables.source(key)
+            && voted
             && !out.iter().any(|o| o.key == source.key)
         {
             out.push(source.clone());
@@ -367,15 +377,4 @@ fn one_line(text: &str) -> String {
     text.chars()
         .map(|c| if c.is_control() { ' ' } else { c })
         .collect()
-}
-
-/// The name of an input for running text.
-pub(super) fn input_names(s: &Study) -> String {
-    let names: Vec<String> = s
-        .origin
-        .inputs
-        .iter()
-        .map(|i| harmless(file_name(&i.path)))
-        .collect();
-    list(&names)
 }

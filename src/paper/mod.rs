@@ -5,23 +5,30 @@
 //! number that does not come from the analysis or its settings.
 
 mod bib;
+mod draft;
 mod ecsv;
 mod latex;
 mod methods;
+mod page;
 mod pictures;
 mod places;
 mod print;
+mod provenance;
 mod rounding;
 mod stamp;
 mod study;
 mod table;
 mod tables;
+mod words;
 
+pub use provenance::{PROVENANCE, Provenance, Recorded, drift, is_to_edit, sha256};
 pub use stamp::{Hashed, Origin};
 pub use study::Study;
 
 use crate::ground::Result;
 use bib::References;
+use methods::Paragraph;
+use page::Page;
 use stamp::Stamp;
 
 /// A file of the kit: its name and content.
@@ -34,31 +41,47 @@ pub type KitFile = (String, Vec<u8>);
 pub fn kit(studies: &[Study]) -> Result<Vec<KitFile>> {
     let stamp = Stamp::new(studies.iter().map(|s| s.origin.clone()));
     let figures = pictures::figures(studies)?;
-    let mut files = Vec::new();
-    for f in pictures::printed(&figures, &stamp)? {
-        files.extend(f);
-    }
-    for t in tables::tables(studies) {
-        files.push((format!("{}.tex", t.name), t.tabular(&stamp).into_bytes()));
-        files.push((
-            format!("{}-deluxe.tex", t.name),
-            t.deluxe(&stamp).into_bytes(),
-        ));
+    let tables = tables::tables(studies);
+    let mut files: Vec<KitFile> = pictures::printed(&figures, &stamp)?.concat();
+    let mut push = |name: &str, text: String| files.push((name.to_owned(), text.into_bytes()));
+    for t in &tables {
+        push(&format!("{}.tex", t.name), t.tabular(&stamp));
+        push(&format!("{}-deluxe.tex", t.name), t.deluxe(&stamp));
     }
     for (name, text) in ecsv::tables(studies, &stamp) {
-        files.push((name.to_owned(), text.into_bytes()));
+        push(name, text);
     }
     let mut refs = References::default();
-    let text: Vec<(String, Vec<methods::Paragraph>)> = studies
+    let methods: Vec<(String, Vec<Paragraph>)> = studies
         .iter()
         .map(|s| (s.heading(), methods::methods(s, &mut refs)))
         .collect();
-    let mut push = |name: &str, text: String| files.push((name.to_owned(), text.into_bytes()));
     push(
         "methods.md",
-        methods::markdown(&text, &refs, &stamp.comment("")),
+        methods::markdown(&methods, &refs, &stamp.comment("")),
     );
-    push("methods.tex", methods::latex(&text, &stamp.comment("%")));
+    push("methods.tex", methods::latex(&methods, &stamp.comment("%")));
     push("sources.bib", refs.bib(&stamp));
+    let page = Page {
+        studies,
+        figures: &figures,
+        tables: &tables,
+        methods: &methods,
+        references: refs.used(),
+        stamp: &stamp,
+    };
+    push("report.html", page.html());
+    if let (Some(figure), Some(table)) = (figures.first(), tables.last()) {
+        let found: Vec<String> = studies
+            .iter()
+            .flat_map(words::findings)
+            .map(|f| f.found)
+            .collect();
+        let shown = (figure.name.as_str(), figure.caption.as_str());
+        push(
+            "draft.tex",
+            draft::draft(studies, shown, table, &found, &stamp),
+        );
+    }
     Ok(files)
 }

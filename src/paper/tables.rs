@@ -181,7 +181,6 @@ fn ratios(studies: &[Study]) -> Table {
         column("Ratio", ""),
         column("Value", ""),
         column("95 % interval", ""),
-        column("Basis", ""),
         column("Comets", ""),
         column("Percentile", ""),
     ];
@@ -191,9 +190,25 @@ fn ratios(studies: &[Study]) -> Table {
     Table {
         name: "ratios",
         caption: format!("Abundance ratios of {}", whose(studies)),
-        note: "Medians with 68.3 % intervals; limits are one-sided at 99.7 %. Basis: ratio of production rates or of column densities. Comets: published comets with this ratio, one measurement each. Percentile: share of them that lies below, with its 68 % interval.".to_owned(),
+        note: format!(
+            "Ratios of {}: medians with 68.3 % intervals; limits are one-sided at 99.7 %. Comets: published comets with this ratio, one measurement each. Percentile: share of them that lies below, with its 68 % interval.",
+            basis(studies)
+        ),
         columns,
         rows,
+    }
+}
+
+/// What the ratios are ratios of.
+fn basis(studies: &[Study]) -> &'static str {
+    let has = |b: Basis| {
+        let mut all = studies.iter().flat_map(|s| &s.analysis.ratios);
+        all.any(|r| r.ratio.basis == b)
+    };
+    match (has(Basis::Production), has(Basis::Column)) {
+        (_, false) => "production rates",
+        (false, true) => "column densities",
+        (true, true) => "production rates or, in some results, column densities",
     }
 }
 
@@ -219,15 +234,10 @@ fn ratio(r: &RatioResult) -> Vec<Cell> {
             s.percentile, s.percentile_low, s.percentile_high
         ))
     });
-    let basis = match r.ratio.basis {
-        Basis::Production => "production",
-        Basis::Column => "column",
-    };
     vec![
         Cell::text(format!("{}/{}", r.ratio.of.pretty(), r.ratio.to.pretty())),
         value,
         wide,
-        Cell::text(basis),
         known.map_or(Cell::Blank, |n| {
             Cell::Number(super::rounding::plain_number(n, 0), n)
         }),

@@ -3,14 +3,17 @@
 use super::super::measure::{hash, load_tables, read_spectra};
 use crate::analysis::analyse;
 use crate::ground::{Error, Result};
-use crate::paper::{Hashed, Origin, Study};
+use crate::paper::{Hashed, Origin, Study, drift};
 use crate::plan::{PlanFile, check, read_plan};
 use crate::report::{self, Input};
 use serde::Deserialize;
+use serde_json::Value;
 use std::path::{Path, PathBuf};
 
 /// Name of the plan that `measure` writes beside `result.json`.
 const PLAN: &str = "plan.resolved.toml";
+/// Most differences that a message lists.
+const MOST_LISTED: usize = 8;
 
 /// What is needed of a `result.json` before everything is computed again.
 #[derive(Deserialize)]
@@ -157,10 +160,40 @@ fn changed(recorded: &[Hashed], now: &[Input]) -> Vec<String> {
     out
 }
 
-/// The study of a result for a kit: refused when the data no longer give the result.
+/// The study of a result for a kit with its numbers, refused when the data no longer give the result.
 ///
 /// # Errors
 /// As [`load`], and numbers of the result that no longer follow from the data.
-pub(super) fn study(path: &Path) -> Result<Study> {
-    Ok(load(path)?.study)
+pub(super) fn current(path: &Path) -> Result<(Study, Value)> {
+    let loaded = load(path)?;
+    let parse = |text: &str| {
+        serde_json::from_str::<Value>(text).map_err(|e| {
+            Error::input(format!("not JSON: {e}"))
+                .in_file(path)
+                .at_line(e.line())
+        })
+    };
+    let computed = parse(&loaded.computed)?;
+    let mut differences = loaded.changed;
+    differences.extend(drift(&parse(&loaded.recorded)?, &computed));
+    if differences.is_empty() {
+        return Ok((loaded.study, computed));
+    }
+    let more = differences.len().saturating_sub(MOST_LISTED);
+    differences.truncate(MOST_LISTED);
+    if more > 0 {
+        differences.push(format!("and {more} more"));
+    }
+    let this = format!("comagauge {}", env!("CARGO_PKG_VERSION"));
+    let by = if loaded.program == this {
+        String::new()
+    } else {
+        format!(" (made by {}; this is {this})", loaded.program)
+    };
+    Err(Error::input(format!(
+        "the plan and spectra no longer give this result{by}:\n  {}",
+        differences.join("\n  ")
+    ))
+    .in_file(path)
+    .remedy("run comagauge measure again, then comagauge paper"))
 }
