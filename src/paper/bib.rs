@@ -127,9 +127,13 @@ fn entry(source: &Source) -> String {
         }
         None => {
             // Styles sort and label an entry without author by this.
-            let first = source.reference.split_whitespace().take(2);
+            let words = source.reference.split_whitespace();
+            let first = words.take_while(|w| !w.starts_with('(')).take(2);
             let short = first.collect::<Vec<_>>().join(" ");
             fields.push(("key", field_text(short.trim_end_matches([',', ':', ';']))));
+            if let Some(year) = last_year(&source.reference) {
+                fields.push(("year", year.to_owned()));
+            }
             fields.push(("note", field_text(&source.reference)));
         }
     }
@@ -188,6 +192,14 @@ fn is_year(text: &str, at: usize) -> bool {
     let digits: String = here.chars().take_while(char::is_ascii_digit).collect();
     let plausible = digits.len() == 4 && matches!(&digits[..2], "17" | "18" | "19" | "20");
     plausible && before.ends_with(' ')
+}
+
+/// The year of a text that ends with one in parentheses.
+fn last_year(text: &str) -> Option<&str> {
+    let inside = text.strip_suffix(')')?.rsplit_once('(')?.1;
+    is_year(&format!(" {inside}"), 1)
+        .then_some(inside)
+        .filter(|y| y.len() == 4)
 }
 
 /// Surnames joined by `&`, `and` and commas, with `et al.` as `others`; `None` when a word does not
@@ -292,6 +304,7 @@ mod tests {
             e.contains("year = {2009}") && e.contains("note = {(as cited"),
             "{e}"
         );
+        assert!(made("IAUC 7455 (2000)", None).contains("key = {IAUC 7455},\n  year = {2000}"));
         assert_eq!(safe_key("a, b}c_d"), "a--b-c-d");
     }
 }

@@ -10,13 +10,17 @@ pub(super) fn draft(
     studies: &[Study],
     figure: (&str, &str),
     table: &Table,
-    found: &[String],
     stamp: &Stamp,
 ) -> String {
     let mut names: Vec<&str> = studies.iter().map(|s| s.settings.label.as_str()).collect();
     names.dedup();
-    let found: Vec<String> = found.iter().map(|f| tex(f)).collect();
+    let found: Vec<String> = table.statements();
     let (figure, caption) = figure;
+    let shown = if figure.starts_with("standing") {
+        "them among published comets"
+    } else {
+        "the data"
+    };
     format!(
         r"{stamp}% A draft to write on: edit it freely. Compile: pdflatex draft; bibtex draft; pdflatex draft twice.
 \documentclass[10pt,twocolumn]{{article}}
@@ -31,17 +35,17 @@ pub(super) fn draft(
 \twocolumn[{{\begin{{center}}{{\Large Abundance ratios of {names}}}\par\vspace{{4pt}}Your name\end{{center}}\vspace{{10pt}}}}]
 
 \subsection*{{Results}}
-{{\small {found} Table~\ref{{tab:{table}}} lists the ratios, Figure~\ref{{fig:{figure}}} shows the data.}}
+{{\small We find {found}. Table~\ref{{tab:{table}}} lists the ratios with their intervals, Figure~\ref{{fig:{figure}}} shows {shown}.}}
 
 \begin{{figure}}
 \centering
-\includegraphics[width=\columnwidth,height=0.3\textheight,keepaspectratio]{{{figure}.pdf}}
+\includegraphics[width=\columnwidth,height=0.42\textheight,keepaspectratio]{{{figure}-narrow.pdf}}
 \caption{{\footnotesize {caption}}}
 \label{{fig:{figure}}}
 \end{{figure}}
 
 \begin{{table}}
-\centering\footnotesize\setlength{{\tabcolsep}}{{3pt}}
+\centering\footnotesize\setlength{{\tabcolsep}}{{3pt}}\renewcommand{{\arraystretch}}{{1.25}}
 \caption{{\footnotesize {title}. {note}}}
 \label{{tab:{table}}}
 \input{{{table}.tex}}
@@ -59,7 +63,7 @@ pub(super) fn draft(
         title = tex(&table.caption),
         note = tex(&table.note),
         names = tex(&names.join(", ")),
-        found = found.join(" "),
+        found = found.join(", "),
         caption = tex(caption),
     )
 }

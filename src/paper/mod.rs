@@ -71,17 +71,10 @@ pub fn kit(studies: &[Study]) -> Result<Vec<KitFile>> {
         stamp: &stamp,
     };
     push("report.html", page.html());
-    if let (Some(figure), Some(table)) = (figures.first(), tables.last()) {
-        let found: Vec<String> = studies
-            .iter()
-            .flat_map(words::findings)
-            .map(|f| f.found)
-            .collect();
+    let standing = figures.iter().find(|f| f.name.starts_with("standing"));
+    if let (Some(figure), Some(table)) = (standing.or(figures.first()), tables.last()) {
         let shown = (figure.name.as_str(), figure.caption.as_str());
-        push(
-            "draft.tex",
-            draft::draft(studies, shown, table, &found, &stamp),
-        );
+        push("draft.tex", draft::draft(studies, shown, table, &stamp));
     }
     Ok(files)
 }

@@ -133,6 +133,20 @@ impl Cell {
 }
 
 impl Table {
+    /// `name = value` of every row, the first number with the cell before it, for running text.
+    pub(super) fn statements(&self) -> Vec<String> {
+        let of = |row: &Vec<Cell>| {
+            let at = row.iter().position(|c| c.order().is_some())?;
+            let name = at.checked_sub(1).map(|i| row[i].latex())?;
+            let sign = match row[at] {
+                Cell::Limit(..) => "",
+                _ => "$=$ ",
+            };
+            Some(format!("{name} {sign}{}", row[at].latex()))
+        };
+        self.rows.iter().filter_map(of).collect()
+    }
+
     fn alignment(&self) -> String {
         let words = |i: usize| self.rows.iter().any(|r| matches!(r[i], Cell::Text(_)));
         (0..self.columns.len())
