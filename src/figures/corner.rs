@@ -7,7 +7,7 @@ use super::panel::{Panel, labels_width, x_ticks, y_ticks};
 use super::style::{
     BLACK, Colour, DARK, DOTTED, FAINT, LABEL_PT, LINE_PT, PALE, Stroke, TICK_PT, TITLE_PT, Width,
 };
-use super::text::{elide, wrap};
+use super::text::{elide, width_pt, wrap};
 use crate::ground::{Error, Result};
 
 /// Draws of several ratios from one shared set.
@@ -73,6 +73,9 @@ struct Layout<'a> {
     top: f64,
     width: f64,
     height: f64,
+    /// Blank between rows.
+    row_gap: f64,
+    page_width: f64,
 }
 
 impl<'a> Layout<'a> {
@@ -102,6 +105,8 @@ impl<'a> Layout<'a> {
             top,
             width: size(left),
             height,
+            row_gap: row_gap(figure, size(left)),
+            page_width: width.points(),
             axes,
         })
     }
@@ -110,7 +115,7 @@ impl<'a> Layout<'a> {
     fn panel(&self, row: usize, column: usize) -> Panel {
         Panel {
             left: self.left + column as f64 * (self.width + GAP_PT),
-            top: self.top + row as f64 * (self.height + GAP_PT),
+            top: self.top + row as f64 * (self.height + self.row_gap),
             width: self.width,
             height: self.height,
             x: self.axes[column],
@@ -202,8 +207,12 @@ impl<'a> Layout<'a> {
         }
         let middle = panel.left + panel.width / 2.0;
         for (line, lift) in [(&ratio.label, 1.6), (&ratio.value, 0.65)] {
-            let text = elide(line, TICK_PT, false, panel.width + GAP_PT);
-            let p = (middle, panel.top - lift * LINE_PT);
+            let text = elide(line, TICK_PT, false, self.page_width - 2.0 * EDGE_PT);
+            let half = 0.5 * width_pt(&text, TICK_PT, false);
+            let x = middle
+                .min(self.page_width - EDGE_PT - half)
+                .max(EDGE_PT + half);
+            let p = (x, panel.top - lift * LINE_PT);
             canvas.text(&text, p, Type::new(TICK_PT, Anchor::Middle));
         }
         let last = index + 1 == self.figure.ratios.len();
@@ -216,6 +225,21 @@ impl<'a> Layout<'a> {
             out.major.iter_mut().for_each(|m| m.1.clear());
         }
         out
+    }
+}
+
+/// Rows move apart when a heading is wider than its panel and would cover its neighbour.
+fn row_gap(figure: &CornerFigure, panel_pt: f64) -> f64 {
+    let widest = figure
+        .ratios
+        .iter()
+        .flat_map(|r| [&r.label, &r.value])
+        .map(|t| width_pt(t, TICK_PT, false))
+        .fold(0.0, f64::max);
+    if widest > panel_pt {
+        2.4 * LINE_PT
+    } else {
+        GAP_PT
     }
 }
 

@@ -3,9 +3,9 @@
 /// Cells along each side.
 const CELLS: usize = 56;
 /// Standard deviation of the smoothing, cells.
-const SMOOTHING_CELLS: f64 = 1.6;
+const SMOOTHING_CELLS: f64 = 2.2;
 /// Reach of the smoothing, cells.
-const REACH: usize = 5;
+const REACH: usize = 7;
 
 /// A smoothed two-dimensional histogram over the unit square.
 pub(super) struct Density {

@@ -137,9 +137,8 @@ fn join(place: &str, key: &str) -> String {
 /// What a list entry is about, for messages: its identifier, or its number.
 fn title(entry: &Value, index: usize) -> String {
     let text = |key: &str| entry.get(key).and_then(Value::as_str);
-    match (text("of"), text("to")) {
-        (Some(of), Some(to)) => return format!("{of}/{to}"),
-        _ => {}
+    if let (Some(of), Some(to)) = (text("of"), text("to")) {
+        return format!("{of}/{to}");
     }
     let named = ["id", "species", "key"].iter().find_map(|k| text(k));
     named.map_or_else(|| (index + 1).to_string(), str::to_owned)
