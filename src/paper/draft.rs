@@ -14,7 +14,10 @@ pub(super) fn draft(
 ) -> String {
     let mut names: Vec<&str> = studies.iter().map(|s| s.settings.label.as_str()).collect();
     names.dedup();
-    let found: Vec<String> = table.statements();
+    let found = match table.statements().join(", ") {
+        none if none.is_empty() => "The data allow no ratio to be given.".to_owned(),
+        some => format!("We find {some}."),
+    };
     let (figure, caption) = figure;
     let shown = if figure.starts_with("standing") {
         "them among published comets"
@@ -35,7 +38,7 @@ pub(super) fn draft(
 \twocolumn[{{\begin{{center}}{{\Large Abundance ratios of {names}}}\par\vspace{{4pt}}Your name\end{{center}}\vspace{{10pt}}}}]
 
 \subsection*{{Results}}
-{{\small We find {found}. Table~\ref{{tab:{table}}} lists the ratios with their intervals, Figure~\ref{{fig:{figure}}} shows {shown}.}}
+{{\small {found} Table~\ref{{tab:{table}}} lists the ratios with their intervals, Figure~\ref{{fig:{figure}}} shows {shown}.}}
 
 \begin{{figure}}
 \centering
@@ -63,7 +66,6 @@ pub(super) fn draft(
         title = tex(&table.caption),
         note = tex(&table.note),
         names = tex(&names.join(", ")),
-        found = found.join(", "),
         caption = tex(caption),
     )
 }

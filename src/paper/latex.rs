@@ -7,20 +7,31 @@ pub(super) const CITE: (char, char) = ('\u{E000}', '\u{E001}');
 /// basic fonts lack become `?`.
 pub(super) fn tex(text: &str) -> String {
     let mut out = String::with_capacity(text.len() + 16);
+    let mut in_math = false;
     let mut rest = text.chars().peekable();
     while let Some(c) = rest.next() {
-        if let Some((mark, first)) = script(c) {
+        let (math, piece) = if let Some((mark, first)) = script(c) {
             let mut run = String::from(first);
-            while let Some((_, d)) = rest.peek().and_then(|n| script(*n)).filter(|n| n.0 == mark) {
+            let same = |n: &char| script(*n).filter(|s| s.0 == mark);
+            while let Some((_, d)) = rest.peek().and_then(same) {
                 run.push(d);
                 rest.next();
             }
-            out.push_str(&format!("${mark}{{{run}}}$"));
+            (true, format!("{mark}{{{run}}}"))
         } else {
-            push(&mut out, c);
+            sign(c)
+        };
+        // Neighbouring pieces of mathematics share their dollars.
+        if math != in_math {
+            out.push('$');
+            in_math = math;
         }
+        out.push_str(&piece);
     }
-    out.replace("$$", "")
+    if in_math {
+        out.push('$');
+    }
+    out
 }
 
 /// The digit of a raised or lowered sign and which of both it is.
@@ -41,8 +52,9 @@ fn script(c: char) -> Option<(char, char)> {
     raised.map(|d| ('^', d)).or(lowered.map(|d| ('_', d)))
 }
 
-fn push(out: &mut String, c: char) {
-    let known = match c {
+/// A sign as LaTeX, and whether it is mathematics.
+fn sign(c: char) -> (bool, String) {
+    let words = match c {
         '\\' => r"\textbackslash{}",
         '{' => r"\{",
         '}' => r"\}",
@@ -53,56 +65,64 @@ fn push(out: &mut String, c: char) {
         '_' => r"\_",
         '^' => r"\textasciicircum{}",
         '~' => r"\textasciitilde{}",
-        '<' => "$<$",
-        '>' => "$>$",
-        '|' => "$|$",
-        '"' => "''",
+        '"' | '”' => "''",
         '[' => "{[}",
         ']' => "{]}",
         '\u{A0}' => "~",
         '–' => "--",
         '—' => "---",
-        '−' => "$-$",
-        '±' => r"$\pm$",
-        '×' => r"$\times$",
-        '·' => r"$\cdot$",
-        '≤' => r"$\le$",
-        '≥' => r"$\ge$",
-        '∝' => r"$\propto$",
-        '√' => r"$\surd$",
-        '°' => r"$^{\circ}$",
-        '″' => "$''$",
-        '′' => "$'$",
         '“' => "``",
-        '”' => "''",
         '‘' => "`",
         '’' => "'",
         '…' => r"\ldots{}",
         'Å' | '\u{212B}' => r"\AA{}",
-        'µ' | 'μ' => r"$\mu$",
-        'Δ' => r"$\Delta$",
-        'α' => r"$\alpha$",
-        'β' => r"$\beta$",
-        'γ' => r"$\gamma$",
-        'λ' => r"$\lambda$",
-        'ν' => r"$\nu$",
-        'ρ' => r"$\rho$",
-        'σ' => r"$\sigma$",
-        'χ' => r"$\chi$",
-        'τ' => r"$\tau$",
-        'ṙ' => r"$\dot{r}$",
-        _ => {
-            out.push(plain(c));
-            return;
-        }
+        _ => return symbol(c),
     };
-    out.push_str(known);
+    (false, words.to_owned())
 }
 
-/// Letters of western languages stay, blanks of all kinds become blanks, all else a question mark.
+fn symbol(c: char) -> (bool, String) {
+    let symbol = match c {
+        '<' => "<",
+        '>' => ">",
+        '|' => "|",
+        '−' => "-",
+        '±' => r"\pm ",
+        '×' => r"\times ",
+        '·' => r"\cdot ",
+        '≤' => r"\le ",
+        '≥' => r"\ge ",
+        '∝' => r"\propto ",
+        '√' => r"\surd ",
+        '°' => r"{}^{\circ}",
+        '″' => "{}''",
+        '′' => "{}'",
+        'µ' | 'μ' => r"\mu ",
+        'Δ' => r"\Delta ",
+        'α' => r"\alpha ",
+        'β' => r"\beta ",
+        'γ' => r"\gamma ",
+        'λ' => r"\lambda ",
+        'ν' => r"\nu ",
+        'ρ' => r"\rho ",
+        'σ' => r"\sigma ",
+        'χ' => r"\chi ",
+        'τ' => r"\tau ",
+        'ṙ' => r"\dot{r}",
+        _ => return (false, plain(c).to_string()),
+    };
+    (true, symbol.to_owned())
+}
+
+/// Letters that the basic fonts have or compose stay, blanks of all kinds become blanks, all else a
+/// question mark.
 fn plain(c: char) -> char {
+    const EASTERN: &str = "ĆćČčĎďĚěĞğıŁłŃńŇňŐőŒœŘřŚśŞşŠšŤťŮůŰűŹźŻżŽž";
     match c {
-        ' '..='~' | '\u{C0}'..='\u{17F}' => c,
+        ' '..='~' => c,
+        'Ð' | 'ð' | 'Þ' | 'þ' | '×' | '÷' => '?',
+        'À'..='ÿ' => c,
+        _ if EASTERN.contains(c) => c,
         _ if c.is_whitespace() || c.is_control() => ' ',
         _ => '?',
     }
@@ -154,8 +174,10 @@ mod tests {
     #[test]
     fn formulas_and_units() {
         assert_eq!(tex("CO₂/H₂O"), "CO$_{2}$/H$_{2}$O");
-        assert_eq!(tex("3.4 × 10²⁷ s⁻¹"), r"3.4 $\times$ 10$^{27}$ s$^{-1}$");
-        assert_eq!(tex("µm Å"), r"$\mu$m \AA{}");
+        assert_eq!(tex("3.4 × 10²⁷ s⁻¹"), r"3.4 $\times $ 10$^{27}$ s$^{-1}$");
+        assert_eq!(tex("µm Å"), r"$\mu $m \AA{}");
+        // A dollar of the text and those of mathematics do not mix.
+        assert_eq!(tex("$<$χ²"), r"\$$<$\$$\chi ^{2}$");
     }
 
     #[test]

@@ -40,7 +40,8 @@ pub type KitFile = (String, Vec<u8>);
 /// A figure that cannot be drawn.
 pub fn kit(studies: &[Study]) -> Result<Vec<KitFile>> {
     let stamp = Stamp::new(studies.iter().map(|s| s.origin.clone()));
-    let figures = pictures::figures(studies)?;
+    let places = places::places(studies);
+    let figures = pictures::figures(studies, &places)?;
     let tables = tables::tables(studies);
     let mut files: Vec<KitFile> = pictures::printed(&figures, &stamp)?.concat();
     let mut push = |name: &str, text: String| files.push((name.to_owned(), text.into_bytes()));
@@ -64,6 +65,7 @@ pub fn kit(studies: &[Study]) -> Result<Vec<KitFile>> {
     push("sources.bib", refs.bib(&stamp));
     let page = Page {
         studies,
+        places: &places,
         figures: &figures,
         tables: &tables,
         methods: &methods,

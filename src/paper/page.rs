@@ -7,7 +7,9 @@ use super::pictures::Figure;
 use super::stamp::Stamp;
 use super::study::Study;
 use super::table::Table;
-use super::words::{capital, doubt, findings};
+use super::words::{doubt, findings};
+use crate::comparison::RatioComparison;
+use crate::ground::Caveat;
 use crate::tables::Source;
 use maud::{DOCTYPE, Markup, PreEscaped, html};
 
@@ -20,6 +22,7 @@ const POLICY: &str =
 /// What the page shows.
 pub(super) struct Page<'a> {
     pub studies: &'a [Study],
+    pub places: &'a [RatioComparison],
     pub figures: &'a [Figure],
     pub tables: &'a [Table],
     pub methods: &'a [(String, Vec<Paragraph>)],
@@ -72,6 +75,18 @@ impl Page<'_> {
         page.into_string()
     }
 
+    /// The doubts of the result and of its comparison with other comets.
+    fn caveats(&self, s: &Study) -> Vec<Caveat> {
+        let mut all = s.analysis.caveats.clone();
+        let own = self.places.iter().filter(|c| c.label == s.settings.label);
+        for c in own.flat_map(|c| &c.caveats) {
+            if !all.contains(c) {
+                all.push(c.clone());
+            }
+        }
+        all
+    }
+
     fn summary(&self, s: &Study) -> Markup {
         let g = &s.settings.geometry;
         html! {
@@ -85,7 +100,7 @@ impl Page<'_> {
                 @for f in findings(s) {
                     p.finding { strong { (f.found) } " " (f.sure) " " (f.place) }
                 }
-                (doubts(s))
+                (doubts(&self.caveats(s)))
             }
         }
     }
@@ -131,9 +146,9 @@ fn lead(s: &Study) -> String {
 }
 
 /// Caveats by kind, in the order of their first appearance, each kind with what it means.
-fn doubts(s: &Study) -> Markup {
+fn doubts(caveats: &[Caveat]) -> Markup {
     let mut kinds: Vec<(&str, Vec<String>)> = Vec::new();
-    for c in &s.analysis.caveats {
+    for c in caveats {
         match kinds.iter_mut().find(|k| k.0 == c.code()) {
             Some(kind) => kind.1.push(c.to_string()),
             None => kinds.push((c.code(), vec![c.to_string()])),
@@ -145,7 +160,7 @@ fn doubts(s: &Study) -> Markup {
         @for (code, texts) in &kinds {
             details.doubt {
                 summary { (doubt(code)) " " span.count { "(" (texts.len()) ")" } }
-                ul { @for t in texts { li { (capital(t)) } } }
+                ul { @for t in texts { li { (t) } } }
             }
         }
         p.hint { "The chances given above hold only as far as these doubts do not matter." }

@@ -1,7 +1,6 @@
 //! The figures of a kit: which there are, their names and captions.
 
 use super::KitFile;
-use super::places::places;
 use super::print::print;
 use super::stamp::Stamp;
 use super::study::Study;
@@ -35,7 +34,7 @@ pub(super) struct Figure {
 ///
 /// # Errors
 /// A value that has no place on its axis.
-pub(super) fn figures(studies: &[Study]) -> Result<Vec<Figure>> {
+pub(super) fn figures(studies: &[Study], places: &[RatioComparison]) -> Result<Vec<Figure>> {
     let mut out = Vec::new();
     for (k, s) in studies.iter().enumerate() {
         let name = |word: &str| {
@@ -60,8 +59,9 @@ pub(super) fn figures(studies: &[Study]) -> Result<Vec<Figure>> {
             out.push(both(name("profile"), profile::caption(s), draw)?);
         }
     }
-    let places = places(studies);
-    for c in &places {
+    let mut comets: Vec<&str> = places.iter().map(|c| c.label.as_str()).collect();
+    comets.dedup();
+    for c in places {
         if c.rows
             .iter()
             .filter(|e| e.heliocentric_au.is_some())
@@ -70,12 +70,16 @@ pub(super) fn figures(studies: &[Study]) -> Result<Vec<Figure>> {
         {
             continue;
         }
-        let name = format!("distance-{}-{}", word(c.of.as_str()), word(c.to.as_str()));
+        let mut name = format!("distance-{}-{}", word(c.of.as_str()), word(c.to.as_str()));
+        if comets.len() > 1 {
+            let number = comets.iter().position(|l| *l == c.label).unwrap_or(0) + 1;
+            name.push_str(&format!("-{number}"));
+        }
         let one = std::slice::from_ref(c);
         let draw = |w| report::comparison_distance_figure(one, w);
         out.extend(maybe(name, distance_caption(c), draw)?);
     }
-    if let Some((figure, caption)) = plane::plane(studies, &places) {
+    if let Some((figure, caption)) = plane::plane(studies, places) {
         let draw = |w| crate::figures::scatter_svg(&figure, w);
         out.push(both("plane".to_owned(), caption, draw)?);
     }

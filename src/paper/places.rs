@@ -22,6 +22,9 @@ pub(super) fn places(studies: &[Study]) -> Vec<RatioComparison> {
             out.push(found);
         }
     }
+    // Comets in the order of their results, the ratios of one together.
+    let order = |c: &RatioComparison| studies.iter().position(|s| s.settings.label == c.label);
+    out.sort_by_key(order);
     out
 }
 

@@ -179,7 +179,14 @@ mod tests {
                 cells[1].parse().expect("an error"),
             );
             let d = decimals(sigma);
-            assert_eq!(fixed(value, d), cells[2], "{line}");
+            // A value that rounds to zero has no sign here.
+            let zero = cells[2].chars().all(|c| "-0.".contains(c));
+            let expected = if zero {
+                cells[2].trim_start_matches('-')
+            } else {
+                cells[2]
+            };
+            assert_eq!(fixed(value, d), expected, "{line}");
             assert_eq!(fixed(sigma, d), cells[3], "{line}");
             seen += 1;
         }

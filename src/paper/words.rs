@@ -1,6 +1,6 @@
 //! Results in plain language, for readers without the field's vocabulary.
 
-use super::rounding::{bare, decimals, fixed, with_power};
+use super::rounding::{decimals, fixed};
 use super::study::Study;
 use crate::analysis::RatioResult;
 use crate::ground::Species;
@@ -106,7 +106,7 @@ fn finding(r: &RatioResult) -> Finding {
                 "No {} was seen: {} there were fewer than {} {} of it.",
                 name(of),
                 per(reference(limit)),
-                plain(limit * reference(limit)),
+                fixed((limit * reference(limit)).ceil(), 0),
                 particles(of)
             ),
             sure: "This bound holds with a chance of 99.7 %.".to_owned(),
@@ -118,7 +118,7 @@ fn finding(r: &RatioResult) -> Finding {
                 capital(&name(of)),
                 name(to),
                 per(reference(limit)),
-                plain(limit * reference(limit)),
+                fixed((limit * reference(limit)).floor(), 0),
                 particles(of),
                 name(of)
             ),
@@ -142,12 +142,7 @@ fn of_name(species: &Species) -> String {
     format!("of {}", name(species))
 }
 
-fn plain(v: f64) -> String {
-    let r = bare(v);
-    with_power(&r.value, r.exponent)
-}
-
-pub(super) fn capital(text: &str) -> String {
+fn capital(text: &str) -> String {
     let mut chars = text.chars();
     chars.next().map_or_else(String::new, |c| {
         c.to_uppercase().collect::<String>() + chars.as_str()
@@ -221,10 +216,10 @@ fn place(r: &RatioResult) -> String {
 pub(super) fn doubt(code: &str) -> &'static str {
     match code {
         "from-memory" => {
-            "Constants that nobody looked up: these numbers were recalled, not read in the publication. If one is wrong, the result is wrong by the same factor."
+            "Some constants were recalled from memory and not checked in the publication. If one is wrong, the result is wrong by the same factor."
         }
         "sources-disagree" => {
-            "Publications disagree about these constants. The error bars hold the stated error of the one used, not always the whole disagreement."
+            "Publications disagree about some constants. The error bars hold the stated error of the one used, not always the whole disagreement."
         }
         "swings-ignored" => {
             "How strongly these gases shine depends on the comet's speed along the line to the Sun; the value used is an average."
@@ -250,6 +245,10 @@ pub(super) fn doubt(code: &str) -> &'static str {
         "optical-depth" => {
             "The gas may be so dense that it hides part of its own light; the true amount would be larger."
         }
+        "water-freezes" => {
+            "So far from the Sun water ice hardly evaporates: ratios to water are high for that reason alone."
+        }
+        "series-varies" => "The dates differ by more than their errors; the mean hides this.",
         "bands-disagree" => {
             "Different features of the same gas give different amounts; something is mixed in or a constant is wrong."
         }

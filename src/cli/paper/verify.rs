@@ -161,9 +161,10 @@ fn conclude(folder: &Path, verdict: &Verdict, files: usize) -> Result<String> {
     for r in &verdict.remarks {
         remarks.push_str(&format!("  note: {r}\n"));
     }
+    let noun = if verdict.inputs == 1 { "file" } else { "files" };
     if verdict.against.is_empty() {
         return Ok(format!(
-            "The numbers in {} follow from the data: {} input files unchanged, {} numbers computed again and equal, {files} files checked.\n{remarks}",
+            "The numbers in {} follow from the data: {} input {noun} unchanged, {} numbers computed again and equal, {files} files checked.\n{remarks}",
             folder.display(),
             verdict.inputs,
             verdict.numbers
