@@ -1,17 +1,20 @@
 //! The methods paragraph, from the settings and numbers of the analysis itself.
 
-use super::bib::{References, sources_of};
+mod compared;
+mod rates;
+mod render;
+
+pub(super) use render::{latex, markdown};
+
+use super::bib::References;
 use super::latex::harmless;
 use super::rounding::number;
 use super::study::Study;
-use crate::analysis::{BandResult, RatioResult};
-use crate::comparison::rows_of;
 use crate::fit::Resolution;
 use crate::frame::{Aperture, Frame, km_per_arcsec};
-use crate::tables::Source;
 
-/// Relative difference of a published value before and after its logarithm.
-const SAME: f64 = 1e-9;
+use compared::comparison;
+use rates::rates;
 
 /// A paragraph with its heading, citations marked; plain Unicode.
 pub(super) struct Paragraph {
@@ -184,79 +187,6 @@ fn range((low, high): (f64, f64)) -> String {
     }
 }
 
-fn rates(s: &Study, refs: &mut References) -> String {
-    let g: Vec<String> = s
-        .analysis
-        .bands
-        .iter()
-        .filter_map(|b| efficiency(s, b, refs))
-        .collect();
-    let mut out = format!(
-        "Fluxes were turned into molecules with fluorescence efficiencies at the heliocentric distance of the comet, in photons s⁻¹ molecule⁻¹: {}.",
-        list(&g)
-    );
-    let without: Vec<String> = s
-        .analysis
-        .bands
-        .iter()
-        .filter(|b| b.efficiency.is_none())
-        .map(|b| harmless(&b.fit.id))
-        .collect();
-    if !without.is_empty() {
-        out.push_str(&format!(" No efficiency is known for {}.", list(&without)));
-    }
-    let haser = refs.cite_haser();
-    let lengths = scale_lengths(s, refs);
-    if !lengths.is_empty() {
-        out.push_str(&format!(
-            " Production rates follow from the Haser model{haser}, integrated over the aperture, with these scale lengths at the comet (for daughters of the parent and of the species itself) and expansion speeds: {}.",
-            lengths.join("; ")
-        ));
-    }
-    out
-}
-
-/// Scale lengths, species with the same source and speed together.
-fn scale_lengths(s: &Study, refs: &mut References) -> Vec<String> {
-    let mut groups: Vec<(&str, f64, Vec<String>)> = Vec::new();
-    for t in &s.settings.species {
-        let Some(coma) = &t.coma else { continue };
-        let lengths = match coma.lengths.daughter_km {
-            Some(d) => format!("{} and {} km", number(coma.lengths.parent_km), number(d)),
-            None => format!("{} km", number(coma.lengths.parent_km)),
-        };
-        let text = format!("{} {lengths}", t.species.pretty());
-        let same = |g: &&mut (&str, f64, Vec<String>)| {
-            g.0 == coma.source.as_str() && g.1 == coma.speed_km_s
-        };
-        match groups.iter_mut().find(same) {
-            Some(group) => group.2.push(text),
-            None => groups.push((&coma.source, coma.speed_km_s, vec![text])),
-        }
-    }
-    let said = |(source, speed, texts): (&str, f64, Vec<String>)| {
-        let cite = refs.cite(&sources_of(s, source));
-        format!("{}, at {} km s⁻¹{cite}", texts.join(", "), number(speed))
-    };
-    groups.into_iter().map(said).collect()
-}
-
-fn efficiency(s: &Study, b: &BandResult, refs: &mut References) -> Option<String> {
-    let g = b.efficiency.as_ref()?;
-    let cite = refs.cite(&sources_of(s, &g.source));
-    let source = if cite.is_empty() {
-        format!(" ({})", harmless(&g.source))
-    } else {
-        cite
-    };
-    Some(format!(
-        "{} for {} (error {}){source}",
-        number(g.g_photons_s),
-        super::tables::band_name(b),
-        per_cent(g.relative_sigma)
-    ))
-}
-
 fn uncertainties(s: &Study) -> String {
     let mut calibration: Vec<String> = s
         .settings
@@ -289,92 +219,4 @@ fn uncertainties(s: &Study) -> String {
         s.settings.draws.seed,
         list(&calibration)
     )
-}
-
-fn comparison(s: &Study, refs: &mut References) -> String {
-    let mut parts = Vec::new();
-    for r in s.analysis.ratios.iter().filter(|r| !r.known.is_empty()) {
-        let (of, to) = (&r.ratio.of, &r.ratio.to);
-        let cited = compiled(s, r);
-        let n = r.known.len();
-        let noun = if n == 1 { "comet" } else { "comets" };
-        parts.push(format!(
-            "{}/{} with {n} {noun}{}",
-            of.pretty(),
-            to.pretty(),
-            refs.cite(&cited)
-        ));
-    }
-    format!(
-        "Ratios were compared with published ones: {}. Each comet counts once, with a value before a limit and then the measurement nearest in heliocentric distance. Limits enter the distribution as censored data (product-limit estimator). Percentile intervals (68.3 %) hold the error of the ratio and the number of comets.",
-        parts.join("; ")
-    )
-}
-
-/// Where the rows that had a vote were read: the compilation where there is one, else the original.
-fn compiled(s: &Study, r: &RatioResult) -> Vec<Source> {
-    let mut out: Vec<Source> = Vec::new();
-    for row in rows_of(&s.tables, &r.ratio.of, &r.ratio.to, r.ratio.basis) {
-        let linear = 10f64.powf(row.log10_value());
-        let voted = r.known.iter().any(|e| {
-            e.comet == row.comet
-                && e.heliocentric_au == row.r_h_au
-                && (e.value / linear - 1.0).abs() < SAME
-        });
-        let key = row.compiled_in.as_deref();
-        let key = key.unwrap_or(&row.provenance.source);
-        if let Some(source) = s.tables.source(key)
-            && voted
-            && !out.iter().any(|o| o.key == source.key)
-        {
-            out.push(source.clone());
-        }
-    }
-    out
-}
-
-/// The text for people who write in plain text: citations as keys in brackets, references below.
-pub(super) fn markdown(
-    studies: &[(String, Vec<Paragraph>)],
-    refs: &References,
-    lead: &str,
-) -> String {
-    let mut out = format!("<!--\n{lead}-->\n");
-    for (heading, paragraphs) in studies {
-        out.push_str(&format!("\n## Methods: {}\n", one_line(heading)));
-        for p in paragraphs {
-            let text = super::latex::cited(&p.text, str::to_owned, |keys| {
-                let keys: Vec<String> = keys.split(',').map(|k| format!("@{k}")).collect();
-                format!("[{}]", keys.join("; "))
-            });
-            out.push_str(&format!("\n**{}.** {text}\n", p.title));
-        }
-    }
-    out.push_str("\n## References\n\n");
-    for s in refs.used() {
-        out.push_str(&format!("* @{}: {}\n", s.key, s.reference));
-    }
-    out
-}
-
-/// The text as LaTeX paragraphs with `\citep`.
-pub(super) fn latex(studies: &[(String, Vec<Paragraph>)], lead: &str) -> String {
-    let mut out = lead.to_owned();
-    for (heading, paragraphs) in studies {
-        out.push_str(&format!("\n% {}\n", one_line(heading)));
-        for p in paragraphs {
-            out.push_str(&format!(
-                "\\paragraph{{{}}}\n{}\n\n",
-                super::latex::tex(&p.title),
-                super::latex::tex_with_citations(&p.text)
-            ));
-        }
-    }
-    out
-}
-
-fn one_line(text: &str) -> String {
-    text.chars()
-        .map(|c| if c.is_control() { ' ' } else { c })
-        .collect()
 }
