@@ -89,6 +89,26 @@ pub(super) fn sources_of(study: &Study, text: &str) -> Vec<Source> {
     out
 }
 
+/// Articles named in a text of references joined by `; `, with keys of first author and year; what is
+/// no article is left out.
+pub(super) fn published_in(text: &str) -> Vec<Source> {
+    let piece = |t: &str| {
+        let reference = t.rsplit(": ").next().unwrap_or(t).trim().to_owned();
+        let parts = Parts::of(&reference).filter(|p| p.place.is_some())?;
+        let first = reference.split([',', '&']).next()?;
+        let first = first.split(" et al").next()?;
+        let first = first.split(|c: char| c.is_ascii_digit()).next()?;
+        let letters = first.chars().filter(char::is_ascii_alphabetic);
+        let name: String = letters.collect::<String>().to_lowercase();
+        Some(Source {
+            key: format!("{name}{}", parts.year),
+            reference,
+            doi_or_id: None,
+        })
+    };
+    text.split("; ").filter_map(piece).collect()
+}
+
 /// A key that can stand in `\citep` and in a BibTeX entry.
 fn safe_key(key: &str) -> String {
     key.chars()
@@ -187,6 +207,16 @@ mod tests {
             e.contains(r"journal = {A\&A}") && e.contains("eprint = {2102.12847}"),
             "{e}"
         );
+    }
+
+    #[test]
+    fn articles_are_found_in_running_text() {
+        let found = published_in(
+            "equilibrium of 2 lines: laboratory gf: Wood et al. 2014, ApJS 211, 20; O'Brian et al. 1991, JOSA B 8, 1185; Den Hartog 2014, ApJS 215, 23; a note",
+        );
+        let keys: Vec<&str> = found.iter().map(|s| s.key.as_str()).collect();
+        assert_eq!(keys, ["wood2014", "obrian1991", "denhartog2014"]);
+        assert_eq!(found[1].reference, "O'Brian et al. 1991, JOSA B 8, 1185");
     }
 
     #[test]

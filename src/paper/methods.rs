@@ -163,7 +163,7 @@ fn fluxes(s: &Study) -> String {
         .iter()
         .any(|b| b.model.structure.lines().len() > 1)
     {
-        "Gaussians or, where set so, envelopes of rotational lines"
+        "Gaussians (where a band has lines of its own, sums of Gaussians at their places)"
     } else {
         "Gaussians"
     };

@@ -52,7 +52,8 @@ pub(super) fn figures(studies: &[Study], places: &[RatioComparison]) -> Result<V
         let corner = corner(s);
         if !corner.ratios.is_empty() {
             let draw = |w| corner_svg(&corner, w);
-            out.push(both(name("posterior"), corner_caption(s), draw)?);
+            let caption = corner_caption(s, corner.ratios.len());
+            out.push(both(name("posterior"), caption, draw)?);
         }
         if let Some(figure) = profile::profile(s) {
             let draw = |w| crate::figures::range_svg(&figure, w);
@@ -175,9 +176,18 @@ fn corner(s: &Study) -> CornerFigure {
     }
 }
 
-fn corner_caption(s: &Study) -> String {
+fn corner_caption(s: &Study, drawn: usize) -> String {
+    let measured = s
+        .analysis
+        .ratios
+        .iter()
+        .filter(|r| r.ratio.interval.is_some());
+    let only = match measured.count() {
+        all if all > drawn => format!("{drawn} of {all} ratios"),
+        _ => "Ratios".to_owned(),
+    };
     format!(
-        "Ratios of {} in {} shared random draws of fluxes, calibration, efficiencies, scale lengths and expansion speed. Diagonal: distribution with median and 68 % interval; below: regions that hold 68 % (dark) and 95 % (light) of the draws. A slanted region means that the errors of two ratios move together.",
+        "{only} of {} in {} shared random draws of fluxes, calibration, efficiencies, scale lengths and expansion speed. Diagonal: distribution with median and 68 % interval; below: regions that hold 68 % (dark) and 95 % (light) of the draws. A slanted region means that the errors of two ratios move together.",
         s.heading(),
         s.settings.draws.count
     )

@@ -79,7 +79,7 @@ fn band(b: &BandResult, aa: f64) -> Vec<Cell> {
     let f = &b.fit;
     let measured = |v: f64, sigma: Option<f64>| match sigma {
         Some(s) => Cell::value(v / aa, s / aa, s / aa),
-        None => position(v / aa),
+        None => position(v / aa, aa),
     };
     let (flux, column) = if f.detected {
         let v = f.flux_erg_s_cm2;
@@ -109,26 +109,30 @@ fn band(b: &BandResult, aa: f64) -> Vec<Cell> {
     ]
 }
 
-/// `CO₂ 4.26 µm` for `CO2-4.26um`, `CN 3883 Å` for `CN-3883`; other identifiers as they are.
+/// `CO₂ 4.26 µm` for `CO2-4.26um`, `CN 3883 Å` for `CN-3883`, `Ni I 3411–3426 Å` for a window; other identifiers as they are.
 pub(super) fn band_name(b: &BandResult) -> String {
     let id = super::latex::harmless(&b.fit.id);
     let Some(species) = &b.species else {
         return id;
     };
-    let Some(rest) = id.strip_prefix(&format!("{species}-")) else {
+    let lead = |sign: char| id.strip_prefix(&format!("{species}{sign}"));
+    let Some(rest) = lead('-').or(lead(' ')) else {
         return id;
     };
     let is_number = |t: &str| t.parse::<f64>().is_ok_and(|v| v > 0.0);
-    match rest.strip_suffix("um") {
-        Some(n) if is_number(n) => format!("{} {n} µm", species.pretty()),
-        None if is_number(rest) => format!("{} {rest} Å", species.pretty()),
+    let range = rest.split_once('-');
+    let range = range.filter(|(low, high)| is_number(low) && is_number(high));
+    match (rest.strip_suffix("um"), range) {
+        (Some(n), _) if is_number(n) => format!("{} {n} µm", species.pretty()),
+        (None, Some((low, high))) => format!("{} {low}–{high} Å", species.pretty()),
+        (None, None) if is_number(rest) => format!("{} {rest} Å", species.pretty()),
         _ => id,
     }
 }
 
 /// A wavelength or width without error: digits that a reader can use.
-fn position(v: f64) -> Cell {
-    let decimals = if v < 100.0 { 4 } else { 1 };
+fn position(v: f64, aa: f64) -> Cell {
+    let decimals = if aa > 1.0 { 4 } else { 1 };
     Cell::Number(super::rounding::plain_number(v, decimals), v)
 }
 

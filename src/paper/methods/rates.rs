@@ -1,6 +1,6 @@
 //! From fluxes to molecules and production rates: the constants in use with their sources.
 
-use super::super::bib::{References, sources_of};
+use super::super::bib::{References, published_in, sources_of};
 use super::super::latex::harmless;
 use super::super::rounding::number;
 use super::super::study::Study;
@@ -67,9 +67,14 @@ fn scale_lengths(s: &Study, refs: &mut References) -> Vec<String> {
 
 fn efficiency(s: &Study, b: &BandResult, refs: &mut References) -> Option<String> {
     let g = b.efficiency.as_ref()?;
-    let cite = refs.cite(&sources_of(s, &g.source));
+    let mut cite = refs.cite(&sources_of(s, &g.source));
+    if cite.is_empty() {
+        cite = refs.cite(&published_in(&g.source));
+    }
     let source = if cite.is_empty() {
         format!(" ({})", harmless(&g.source))
+    } else if g.source.starts_with("equilibrium") {
+        format!(", statistical equilibrium{cite}")
     } else {
         cite
     };
