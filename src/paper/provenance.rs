@@ -78,10 +78,18 @@ pub fn is_to_edit(name: &str) -> bool {
     TO_EDIT.contains(&name)
 }
 
-/// What differs between two results, in words; paths of files do not count.
+/// What differs between two results, in words, ratios first; paths of files do not count.
 pub fn drift(before: &Value, now: &Value) -> Vec<String> {
     let mut out = Vec::new();
     walk(before, now, "", &mut out);
+    let rank = |text: &String| {
+        let part = text.split([' ', ':']).next().unwrap_or_default();
+        ["ratios", "species", "bands"]
+            .iter()
+            .position(|p| *p == part)
+            .unwrap_or(3)
+    };
+    out.sort_by_key(rank);
     out
 }
 
