@@ -1,6 +1,7 @@
 //! Values and errors rounded for print.
 //!
-//! The rule of the Particle Data Group (Review of Particle Physics, introduction, section 5.3): when
+//! The rule of the Particle Data Group (Review of Particle Physics, introduction; wording from memory,
+//! outcome checked against an independent library in `tests/external/rounding`): when
 //! the three leading digits of the error lie between 100 and 354, two digits are kept; between 355 and
 //! 949, one; from 950 on the error is rounded up to 1000 and two digits are kept. The value is rounded
 //! to the last digit of its error. Of two unequal errors the smaller decides, so that neither loses
