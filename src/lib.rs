@@ -26,6 +26,7 @@ pub mod forward;
 pub mod frame;
 pub mod ground;
 pub mod identify;
+pub mod paper;
 pub mod plan;
 pub mod ratio;
 pub mod rehearse;

@@ -173,7 +173,7 @@ fn default_folder(plan: &Path) -> PathBuf {
     plan.with_file_name(format!("{stem}-results"))
 }
 
-fn hash(path: &Path) -> Result<Input> {
+pub(super) fn hash(path: &Path) -> Result<Input> {
     let fail = |e| Error::io("cannot read", path, &e);
     let mut file = BufReader::with_capacity(1 << 16, std::fs::File::open(path).map_err(fail)?);
     let mut hasher = Sha256::new();

@@ -12,6 +12,7 @@ mod geometry;
 mod identify;
 mod measure;
 mod output;
+mod paper;
 mod prepare;
 mod reading;
 mod rehearse;
@@ -53,6 +54,8 @@ enum Command {
     Identify(identify::Identify),
     /// Say where ratios stand among known comets.
     Compare(Box<compare::Compare>),
+    /// Make figures, tables, text and references for a paper draft from results.
+    Paper(paper::Paper),
     /// Repeat the analysis on the fitted model with fresh noise: bias, coverage, detections.
     Rehearse(rehearse::Rehearse),
     /// Make the spectrum of a given composition, and say what exposures can detect.
@@ -74,6 +77,7 @@ pub fn run() -> ExitCode {
         Command::Efficiency(e) => e.run(),
         Command::Identify(i) => i.run(),
         Command::Compare(c) => c.run(),
+        Command::Paper(p) => p.run(),
         Command::Rehearse(r) => r.run(),
         Command::Simulate(s) => s.run(),
     };

@@ -10,8 +10,10 @@
 mod alternatives;
 mod axis;
 mod canvas;
+mod corner;
 mod coverage;
 mod curve;
+mod density;
 mod excitation;
 mod fit;
 mod fit_panel;
@@ -31,6 +33,7 @@ pub use alternatives::{
     AlternativePanel, AlternativePoint, AlternativesFigure, Reach, alternatives_svg,
 };
 pub use axis::Scale;
+pub use corner::{CornerFigure, CornerRatio, corner_svg};
 pub use coverage::{CoverageFigure, CoveragePoint, CoverageRow, coverage_svg};
 pub use curve::{Curve, CurveFigure, Tick, VerticalMark, range_svg};
 pub use excitation::{ExcitationFigure, ExcitationPanel, ExcitationPoint, excitation_svg};

@@ -237,6 +237,19 @@ pub(super) fn title_lines(quantity: &str, unit: &str, length_pt: f64) -> Vec<Str
         return wrap(&one, LABEL_PT, false, length_pt, 2);
     }
     let mut lines = wrap(quantity, LABEL_PT, false, length_pt, 1);
-    lines.extend(wrap(unit, LABEL_PT, false, length_pt, 2));
+    lines.extend(balanced(unit, length_pt));
     lines
+}
+
+/// A text in at most two lines of like length.
+fn balanced(text: &str, length_pt: f64) -> Vec<String> {
+    let broken = |room: f64| wrap(text, LABEL_PT, false, room, 3);
+    if broken(length_pt).len() != 2 {
+        return wrap(text, LABEL_PT, false, length_pt, 2);
+    }
+    let mut room = length_pt;
+    while broken(room - 1.0).len() == 2 && !broken(room - 1.0).iter().any(|l| l.ends_with('…')) {
+        room -= 1.0;
+    }
+    broken(room)
 }

@@ -39,6 +39,8 @@ pub struct ScatterFigure {
 pub struct ScatterPoint {
     /// Abscissa, positive.
     pub x: f64,
+    /// Error bar or limit of the abscissa, where it is a measurement itself.
+    pub across: Option<ComparisonValue>,
     /// Ratio or limit.
     pub value: ComparisonValue,
     /// Index into [`ScatterFigure::classes`]; without meaning for this comet.
@@ -250,7 +252,32 @@ impl<'a> Layout<'a> {
                 arrow(canvas, (x, y), (x, to), stroke, head_pt);
             }
         }
+        self.bar_across(canvas, p, stroke, head_pt);
         (x, y)
+    }
+
+    fn bar_across(&self, canvas: &mut Canvas, p: &ScatterPoint, stroke: Stroke, head_pt: f64) {
+        let panel = &self.panel;
+        let (x, y) = (panel.px_inside(p.x), panel.py_inside(p.value.main()));
+        match p.across {
+            None => {}
+            Some(ComparisonValue::Measured { bar, .. }) => {
+                let low = if bar.low > 0.0 {
+                    panel.px_inside(bar.low)
+                } else {
+                    panel.left
+                };
+                canvas.path(&[(low, y), (panel.px_inside(bar.high), y)], stroke);
+            }
+            Some(ComparisonValue::UpperLimit(_)) => {
+                let to = (x - ARROW_PT).max(panel.left);
+                arrow(canvas, (x, y), (to, y), stroke, head_pt);
+            }
+            Some(ComparisonValue::LowerLimit(_)) => {
+                let to = (x + ARROW_PT).min(panel.right());
+                arrow(canvas, (x, y), (to, y), stroke, head_pt);
+            }
+        }
     }
 }
 
@@ -267,7 +294,15 @@ fn diamond(canvas: &mut Canvas, p: Point) {
 
 fn axes(figure: &ScatterFigure) -> Result<(Axis, Axis)> {
     let all = || figure.points.iter().chain(&figure.this);
-    let x = Axis::covering(all().map(|p| p.x), Scale::Log, "abscissa of the comets")?;
+    let core = Axis::covering(all().map(|p| p.x), Scale::Log, "abscissa of the comets")?;
+    let reach = (core.lo / BAR_REACH, core.hi * BAR_REACH);
+    let bars = all().flat_map(|p| match p.across {
+        Some(ComparisonValue::Measured { bar, .. }) => {
+            [bar.low, bar.high].map(|v| v.clamp(reach.0, reach.1))
+        }
+        _ => [core.lo, core.hi],
+    });
+    let x = Axis::covering(bars.chain([core.lo, core.hi]), Scale::Log, "abscissa")?;
     let core = Axis::covering(all().map(|p| p.value.main()), Scale::Log, "ratios")?;
     let reach = (core.lo / BAR_REACH, core.hi * BAR_REACH);
     let bars = all().flat_map(|p| match p.value {
@@ -323,6 +358,7 @@ mod tests {
         };
         ScatterPoint {
             x,
+            across: None,
             value: ComparisonValue::Measured { value, bar },
             class: 0,
         }

@@ -99,6 +99,7 @@ pub fn comparison_distance_figure(
         .filter_map(|e: &Entry| {
             Some(ScatterPoint {
                 x: e.heliocentric_au?,
+                across: None,
                 value: published_value(e),
                 class: class_index(e, &classes),
             })
@@ -132,6 +133,7 @@ fn this_points(c: &RatioComparison) -> Vec<ScatterPoint> {
         };
         Some(ScatterPoint {
             x: d.r_h_au?,
+            across: None,
             value,
             class: 0,
         })

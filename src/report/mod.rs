@@ -42,7 +42,7 @@ fn cell(value: impl Into<Option<f64>>) -> String {
 }
 
 /// Shortest text that reads back to the same number, in exponent form where that is shorter.
-fn shortest(v: f64) -> String {
+pub(crate) fn shortest(v: f64) -> String {
     let plain = format!("{v}");
     let exponent = format!("{v:e}");
     if exponent.len() < plain.len() {
