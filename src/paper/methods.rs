@@ -127,26 +127,7 @@ fn frames(s: &Study) -> String {
 }
 
 fn fluxes(s: &Study) -> String {
-    let windows: Vec<String> = s
-        .analysis
-        .fits
-        .iter()
-        .flat_map(|(_, fit)| &fit.windows)
-        .map(|w| {
-            format!(
-                "{} (continuum of order {}, χ²/ν = {:.1}/{}{})",
-                range(w.window_aa),
-                w.continuum_order,
-                w.chi2,
-                w.dof,
-                if w.errors_estimated {
-                    ", errors estimated from the scatter"
-                } else {
-                    ""
-                }
-            )
-        })
-        .collect();
+    let windows = windows(s);
     let resolution = s
         .settings
         .spectra
@@ -180,11 +161,54 @@ fn fluxes(s: &Study) -> String {
         .first()
         .map_or(10.0, |t| t.fit.free_shape_sigma);
     format!(
-        "Bands were modelled as {shape} on {}, together by weighted least squares in the windows {}.{instrument} Centres and widths were fitted from a signal-to-noise ratio of {free} and held below. A band counts as detected from {} times its error; below, limits are one-sided at 99.7 %.",
+        "Bands were modelled as {shape} on {}, together by weighted least squares in {}.{instrument} Centres and widths were fitted from a signal-to-noise ratio of {free} and held below. A band counts as detected from {} times its error; below, limits are one-sided at 99.7 %.",
         continuum(s),
-        list(&windows),
+        windows,
         s.settings.detection_sigma
     ) + &outliers(s)
+}
+
+/// More windows than this are summarised.
+const MANY_WINDOWS: usize = 8;
+
+/// The windows one by one, or what they have in common when there are many.
+fn windows(s: &Study) -> String {
+    let all: Vec<_> = s
+        .analysis
+        .fits
+        .iter()
+        .flat_map(|(_, fit)| &fit.windows)
+        .collect();
+    if all.len() > MANY_WINDOWS {
+        let reduced = all.iter().map(|w| w.chi2 / w.dof as f64);
+        let (low, high) = reduced.fold((f64::INFINITY, 0.0_f64), |(a, b), v| (a.min(v), b.max(v)));
+        let orders = all.iter().map(|w| w.continuum_order);
+        let (first, last) = (all[0].window_aa.0, all[all.len() - 1].window_aa.1);
+        return format!(
+            "{} windows within {} (continuum of order {} at most, χ²/ν between {low:.2} and {high:.2})",
+            all.len(),
+            range((first, last)),
+            orders.max().unwrap_or(0)
+        );
+    }
+    let each: Vec<String> = all
+        .iter()
+        .map(|w| {
+            format!(
+                "{} (continuum of order {}, χ²/ν = {:.1}/{}{})",
+                range(w.window_aa),
+                w.continuum_order,
+                w.chi2,
+                w.dof,
+                if w.errors_estimated {
+                    ", errors estimated from the scatter"
+                } else {
+                    ""
+                }
+            )
+        })
+        .collect();
+    format!("the windows {}", list(&each))
 }
 
 /// What lies under the bands.

@@ -11,8 +11,10 @@ use crate::ratio::RatioKind;
 use crate::standing::{Distribution, Entry, Known};
 use crate::tables::DynamicalClass;
 
-/// Model curves are drawn with this many points per window.
-const CURVE_POINTS: usize = 600;
+/// Model curves are drawn with this many points per window at least and at most.
+const CURVE_POINTS: (usize, usize) = (160, 2000);
+/// Points per standard deviation of a line.
+const POINTS_PER_SIGMA: f64 = 3.0;
 /// Windows longer than this are drawn in µm.
 const MICRON_FROM_AA: f64 = 10_000.0;
 
@@ -50,8 +52,9 @@ pub(super) fn heading(settings: &Settings) -> String {
 
 fn panel(analysis: &Analysis, fit: &SpectrumFit, window: &WindowFit, aa: f64) -> FitPanel {
     let (low, high) = window.window_aa;
-    let grid: Vec<f64> = (0..CURVE_POINTS)
-        .map(|i| low + (high - low) * i as f64 / (CURVE_POINTS - 1) as f64)
+    let points = curve_points(fit, window);
+    let grid: Vec<f64> = (0..points)
+        .map(|i| low + (high - low) * i as f64 / (points - 1) as f64)
         .collect();
     let mut total: Vec<f64> = grid.iter().map(|x| window.continuum_at(*x)).collect();
     let continuum = total.clone();
@@ -101,6 +104,17 @@ fn panel(analysis: &Analysis, fit: &SpectrumFit, window: &WindowFit, aa: f64) ->
         bands,
         left_out: gaps(window, aa),
     }
+}
+
+/// So many points that the narrowest line is drawn smoothly, and no more.
+fn curve_points(fit: &SpectrumFit, window: &WindowFit) -> usize {
+    let own = fit.bands.iter().filter(|b| window.bands.contains(&b.id));
+    let sigma = own
+        .map(|b| b.line_sigma_aa)
+        .filter(|s| *s > 0.0)
+        .fold(f64::INFINITY, f64::min);
+    let wanted = POINTS_PER_SIGMA * (window.window_aa.1 - window.window_aa.0) / sigma;
+    (wanted as usize).clamp(CURVE_POINTS.0, CURVE_POINTS.1)
 }
 
 /// What was summed up of an integrated band, straight between the samples.

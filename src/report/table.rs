@@ -120,12 +120,40 @@ fn bands(list: &[BandResult]) -> String {
     grid(&header, rows)
 }
 
+/// More windows than this share one line.
+const MOST_DUST_ROWS: usize = 6;
+/// A reddening with a larger error, % per 1000 Å, is not shown: its window is too narrow.
+const USELESS_REDDENING: f64 = 100.0;
+
+/// The dust of many narrow windows in one line.
+fn many_windows(list: &[DustResult]) -> String {
+    let mut values: Vec<f64> = list
+        .iter()
+        .flat_map(|d| &d.afrho_cm)
+        .map(|(_, a)| a.value)
+        .collect();
+    values.sort_by(f64::total_cmp);
+    let (Some(least), Some(most)) = (values.first(), values.last()) else {
+        return String::new();
+    };
+    format!(
+        "dust in {} windows, {:.0}–{:.0} Å: A(θ)fρ {:.0} cm in the median, {least:.0} to {most:.0}\n",
+        list.len(),
+        list[0].window_aa.0,
+        list[list.len() - 1].window_aa.1,
+        values[values.len() / 2]
+    )
+}
+
 fn dust(list: &[DustResult]) -> String {
     let digits = |m: Measured, unit: &str| {
         let digits = (1 - m.sigma.log10().floor() as i32).clamp(0, 4) as usize;
         format!("{:.digits$} ± {:.digits$}{unit}", m.value, m.sigma)
     };
     let dash = || "–".to_owned();
+    if list.len() > MOST_DUST_ROWS {
+        return many_windows(list);
+    }
     let rows = list
         .iter()
         .map(|d| {
@@ -136,7 +164,9 @@ fn dust(list: &[DustResult]) -> String {
                 .collect();
             vec![
                 format!("{:.0}–{:.0}", d.window_aa.0, d.window_aa.1),
-                d.reddening_percent.map_or_else(dash, |s| digits(s, "")),
+                d.reddening_percent
+                    .filter(|s| s.sigma < USELESS_REDDENING)
+                    .map_or_else(dash, |s| digits(s, "")),
                 if afrho.is_empty() {
                     dash()
                 } else {

@@ -7,14 +7,34 @@ use super::super::study::Study;
 use super::super::tables::band_name;
 use super::{list, per_cent};
 use crate::analysis::BandResult;
+use crate::tables::Source;
 
 pub(super) fn rates(s: &Study, refs: &mut References) -> String {
-    let g: Vec<String> = s
+    let computed = |b: &&BandResult| is_computed(b);
+    let listed: Vec<&BandResult> = s
         .analysis
         .bands
         .iter()
+        .filter(|b| !is_computed(b))
+        .collect();
+    let mut g: Vec<String> = listed
+        .into_iter()
         .filter_map(|b| efficiency(s, b, refs))
         .collect();
+    for t in &s.settings.species {
+        let own: Vec<&BandResult> = s
+            .analysis
+            .bands
+            .iter()
+            .filter(computed)
+            .filter(|b| b.species.as_ref() == Some(&t.species))
+            .collect();
+        match own[..] {
+            [] => {}
+            [one] => g.extend(efficiency(s, one, refs)),
+            _ => g.push(line_groups(s, &t.species.pretty(), &own, refs)),
+        }
+    }
     let mut out = format!(
         "Fluxes were turned into molecules with fluorescence efficiencies at the heliocentric distance of the comet, in photons s⁻¹ molecule⁻¹: {}.",
         list(&g)
@@ -63,6 +83,39 @@ fn scale_lengths(s: &Study, refs: &mut References) -> Vec<String> {
         format!("{}, at {} km s⁻¹{cite}", texts.join(", "), number(speed))
     };
     groups.into_iter().map(said).collect()
+}
+
+fn is_computed(b: &BandResult) -> bool {
+    let source = b.efficiency.as_ref().map(|g| g.source.as_str());
+    source.is_some_and(|t| t.starts_with("equilibrium"))
+}
+
+/// All line groups of one species in one phrase.
+fn line_groups(s: &Study, name: &str, own: &[&BandResult], refs: &mut References) -> String {
+    let all: Vec<_> = own.iter().filter_map(|b| b.efficiency.as_ref()).collect();
+    let values = all.iter().map(|g| g.g_photons_s);
+    let (low, high) = values.fold((f64::INFINITY, 0.0_f64), |(a, b), v| (a.min(v), b.max(v)));
+    let mut sources: Vec<Source> = Vec::new();
+    for g in &all {
+        let own = sources_of(s, &g.source);
+        let found = if own.is_empty() {
+            published_in(&g.source)
+        } else {
+            own
+        };
+        for source in found {
+            if !sources.iter().any(|k| k.key == source.key) {
+                sources.push(source);
+            }
+        }
+    }
+    let cite = refs.cite(&sources);
+    format!(
+        "{} to {} for the lines of {name} in {} windows, statistical equilibrium{cite}",
+        number(low),
+        number(high),
+        own.len()
+    )
 }
 
 fn efficiency(s: &Study, b: &BandResult, refs: &mut References) -> Option<String> {
