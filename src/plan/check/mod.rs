@@ -81,7 +81,7 @@ impl Checked {
     /// transmissions divided out, sunlight brought to each spectrum's resolution.
     ///
     /// # Errors
-    /// As [`Checked::settle_frames`]; a curve that does not cover its spectrum.
+    /// A frame in which the velocity of the comet is not known; a curve that does not cover its spectrum.
     pub fn settle(
         &mut self,
         file: &PlanFile,
