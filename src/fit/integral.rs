@@ -1,9 +1,10 @@
 //! Bands without a profile: the flux between two wavelengths above the fitted model.
 
 use super::model::{Basis, Samples, WindowModel};
+use super::outcome::WindowOutcome;
 use super::pick::{Picked, SampleUse};
 use super::solver::Residuals;
-use super::window::{WindowInput, WindowOutcome};
+use super::window::WindowInput;
 use crate::frame::RestSpectrum;
 use crate::ground::{Error, Result};
 use nalgebra::{DMatrix, DVector};

@@ -1,9 +1,9 @@
 //! Doubts about a fitted window and its bands.
 
+use super::outcome::WindowOutcome;
 use super::pick::SampleUse;
 use super::results::{BandFit, WindowFit};
 use super::settings::FitSettings;
-use super::window::WindowOutcome;
 use crate::ground::Caveat;
 use crate::ground::constants::FWHM_PER_SIGMA;
 

@@ -1,9 +1,10 @@
 //! Outliers and correlated noise: samples dropped on request, errors raised where neighbouring
 //! residuals are alike.
 
+use super::outcome::WindowOutcome;
 use super::pick::{Picked, SampleUse};
 use super::solver::Residuals;
-use super::window::{WindowInput, WindowOutcome};
+use super::window::WindowInput;
 use nalgebra::DMatrix;
 
 /// Rounds of clipping at most.

@@ -1,11 +1,12 @@
 //! Errors of the fluxes that do not rest on the curvature of χ² alone: profiles, resampling, walkers.
 
 use super::model::{Basis, Samples, WindowModel};
+use super::outcome::WindowOutcome;
 use super::robust::residuals;
 use super::settings::Uncertainty;
 use super::solver::{Residuals, Solver, Stop};
 use super::walkers::{Chain, walk};
-use super::window::{WindowInput, WindowOutcome};
+use super::window::WindowInput;
 use crate::ground::{Error, Result};
 use argmin::core::{CostFunction, Executor, State};
 use argmin::solver::brent::BrentRoot;

@@ -2,8 +2,8 @@
 //! (Goodman & Weare 2010, Communications in Applied Mathematics and Computational Science 5, 65).
 
 use super::model::WindowModel;
+use super::outcome::WindowOutcome;
 use super::solver::Residuals;
-use super::window::WindowOutcome;
 use nalgebra::DMatrix;
 use rand::RngExt;
 use rand_distr::{Distribution, StandardNormal};

@@ -8,7 +8,9 @@ mod check;
 mod document;
 mod resolve;
 mod schema;
+mod schema_bands;
 mod schema_light;
+mod schema_simulate;
 
 pub use check::{Checked, check, instant, orbit, site};
 pub use document::{PlanFile, read_plan};

@@ -1,11 +1,11 @@
 //! The keys of a plan file.
 
-use crate::fit::Freedom;
 use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
-use std::collections::BTreeMap;
 
+pub use super::schema_bands::{BandPlan, LinesPlan};
 pub use super::schema_light::{ContinuumPlan, StarPlan, ThermalPlan, TransmissionPlan};
+pub use super::schema_simulate::{SimulateContinuumPlan, SimulateNoisePlan, SimulatePlan};
 
 /// A plan: which spectra, of which comet, what to measure and how.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
@@ -289,136 +289,6 @@ pub struct MeasurePlan {
     pub errors_from: Option<String>,
 }
 
-/// A custom band, or changes to a band of the line lists with the same id.
-#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize, JsonSchema)]
-#[serde(deny_unknown_fields)]
-pub struct BandPlan {
-    /// Identifier.
-    pub id: String,
-    /// Species; without one only the flux is measured.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub species: Option<String>,
-    /// Unit of centre, fwhm and window (default: that of the first spectrum).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub unit: Option<String>,
-    /// Medium of centre and window (default: that of the first spectrum).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub medium: Option<String>,
-    /// Rest wavelength.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub centre: Option<f64>,
-    /// Intrinsic full width at half maximum, without the instrument's; 0 for a line.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub fwhm: Option<f64>,
-    /// Range fitted around the band.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub window: Option<[f64; 2]>,
-    /// Fluorescence efficiency at 1 au, photons per second and molecule.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub g_photons_s: Option<f64>,
-    /// Or in erg per second and molecule.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub g_erg_s: Option<f64>,
-    /// Relative error of g (default: that of the line lists, or 0 for a g given here).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub g_sigma: Option<f64>,
-    /// Where the g given here comes from.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub g_source: Option<String>,
-    /// "gaussian" (default); "envelope": the rotational lines of the band at `temperature_k`, each with
-    /// the instrument's width; "window": the flux between two wavelengths above the continuum, other
-    /// bands subtracted; "template": a profile of your own.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub shape: Option<String>,
-    /// Limits of a band with shape "window".
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub between: Option<[f64; 2]>,
-    /// Two-column text file of a band with shape "template": wavelength and relative intensity at the
-    /// instrument's resolution.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub template: Option<String>,
-    /// Lines of a multiplet with fixed flux ratios: pairs of wavelength and relative flux, instead of
-    /// centre and fwhm.
-    #[serde(default, skip_serializing_if = "Vec::is_empty")]
-    pub multiplet: Vec<[f64; 2]>,
-    /// Rotational temperature of an envelope, K (default 70 K over the heliocentric distance in au).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub temperature_k: Option<f64>,
-    /// "held" (default), "auto" or "free": whether the temperature of an envelope is fitted.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub temperature_is: Option<Freedom>,
-    /// Fit the wings of a Gaussian too, by Gauss–Hermite terms of third and fourth order: "held"
-    /// (default: none), "auto" or "free".
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub wings_are: Option<Freedom>,
-    /// Limits of the fitted centre.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub centre_range: Option<[f64; 2]>,
-    /// Limits of the fitted full width at half maximum, instrument included.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub fwhm_range: Option<[f64; 2]>,
-    /// Limits of the flux, erg s⁻¹ cm⁻²; they bias weak bands.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub flux_range: Option<[f64; 2]>,
-    /// Limits of the fitted temperature, K.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub temperature_range: Option<[f64; 2]>,
-    /// "auto" (default), "free" or "held".
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub centre_is: Option<Freedom>,
-    /// "auto" (default), "free" or "held".
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub width_is: Option<Freedom>,
-    /// Bands with the same word here share velocity and width. Lines nearer than 1.5 instrumental widths
-    /// to each other do so without being told, unless centre_is or width_is is given.
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub tie: Option<String>,
-    /// Number of the spectrum to measure it in (default: the first that covers it).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub spectrum: Option<usize>,
-}
-
-impl BandPlan {
-    /// A centre where only limits, a multiplet or a template tell of one.
-    pub(super) fn rough_centre(&self) -> Option<f64> {
-        let middle = |r: [f64; 2]| 0.5 * (r[0] + r[1]);
-        let lines = self.multiplet.iter().map(|l| l[0]);
-        let (low, high) = lines.fold((f64::INFINITY, 0.0_f64), |(a, b), w| (a.min(w), b.max(w)));
-        if low < high || self.multiplet.len() == 1 {
-            return Some(0.5 * (low + high));
-        }
-        let templated = self.template.as_ref().and(self.window).map(middle);
-        self.between.map(middle).or(templated)
-    }
-}
-
-/// All lines of an atom in some windows: one column per window, relative fluxes from the statistical
-/// equilibrium.
-#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
-#[serde(deny_unknown_fields)]
-pub struct LinesPlan {
-    /// The atom or ion, for example "Ni I"; or "CN" for the lines of its violet bands.
-    pub species: String,
-    /// Ranges to fit; the lines of one range share velocity and column.
-    pub windows: Vec<[f64; 2]>,
-    /// Lines below this fraction of the strongest one's power are left out (default 0.01).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub threshold: Option<f64>,
-    /// Lines to leave out, by wavelength within 0.05 Å.
-    #[serde(default, skip_serializing_if = "Vec::is_empty")]
-    pub without: Vec<f64>,
-    /// The species' column is the robust mean of its lines, in which lines that disagree lose their
-    /// weight (default false: the weighted mean of the windows).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub robust: Option<bool>,
-    /// Unit of the wavelengths here (default: that of the first spectrum).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub unit: Option<String>,
-    /// Their medium (default: that of the first spectrum).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub medium: Option<String>,
-}
-
 /// The coma model.
 #[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize, JsonSchema)]
 #[serde(deny_unknown_fields)]
@@ -493,52 +363,4 @@ impl TablesPlan {
     fn is_default(&self) -> bool {
         *self == Self::default()
     }
-}
-
-/// A spectrum to be simulated through the first `[[spectrum]]`, in whose units all values are.
-#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
-#[serde(deny_unknown_fields)]
-pub struct SimulatePlan {
-    /// First and last wavelength.
-    pub range: [f64; 2],
-    /// Samples per resolution element (default 2.5).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub samples_per_fwhm: Option<f64>,
-    /// Production rates by species, molecules per second.
-    pub production: BTreeMap<String, f64>,
-    /// The continuum.
-    pub continuum: SimulateContinuumPlan,
-    /// The noise.
-    pub noise: SimulateNoisePlan,
-}
-
-/// The continuum of the simulated spectrum: flux_density · (1 + slope_per_1000_aa · (λ − at)/1000 Å),
-/// times sunlight over its value at `at` where `[continuum]` says so, plus thermal emission.
-#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
-#[serde(deny_unknown_fields)]
-pub struct SimulateContinuumPlan {
-    /// Flux density in the spectrum's flux unit.
-    pub flux_density: f64,
-    /// Wavelength it belongs to.
-    pub at: f64,
-    /// Relative change per 1000 Å (default 0).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub slope_per_1000_aa: Option<f64>,
-    /// Thermal flux density at the same wavelength, in the same unit; its temperature is that of
-    /// `[continuum.thermal]` (default 0).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub thermal_flux_density: Option<f64>,
-}
-
-/// Noise per sample: the two parts in square, times √(exposure_s / exposure).
-#[derive(Clone, Debug, PartialEq, Serialize, Deserialize, JsonSchema)]
-#[serde(deny_unknown_fields)]
-pub struct SimulateNoisePlan {
-    /// Part that is proportional to the flux (default 0).
-    #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub relative: Option<f64>,
-    /// Constant part, in the spectrum's flux unit at the continuum's wavelength.
-    pub floor: f64,
-    /// The exposure in s to which both belong.
-    pub exposure_s: f64,
 }
