@@ -3,7 +3,9 @@
 use super::Checker;
 use crate::ground::{Error, FluxUnit, Medium, Result, WavelengthUnit};
 use crate::plan::schema::StarPlan;
-use crate::spectrum::{FitsLayout, Layout, Spectrum, TextLayout, looks_like_fits, read_spectrum};
+use crate::spectrum::{
+    Column, FitsLayout, Layout, Spectrum, TextLayout, looks_like_fits, read_spectrum,
+};
 use std::path::{Path, PathBuf};
 
 /// Wavelengths as read (vacuum Å) and values.
@@ -13,18 +15,14 @@ pub(super) struct Curve {
 }
 
 impl Checker<'_> {
-    /// Reads two columns of a text file, wavelength in the given unit and a plain number.
+    /// Reads the first two columns of a text file, wavelength in the given unit and a plain number; errors
+    /// name the file and its line.
     pub(super) fn curve(
         &mut self,
         name: &str,
         (unit, medium): (WavelengthUnit, Medium),
-        keys: &[&str],
     ) -> Result<Curve> {
-        self.read_curve(Path::new(name), unit, medium)
-            .map_err(|e| self.file.point(e, keys))
-    }
-
-    fn read_curve(&mut self, path: &Path, unit: WavelengthUnit, medium: Medium) -> Result<Curve> {
+        let path = Path::new(name);
         // Cgs per Å is the unit inside, so that the numbers come through as they are.
         let plain = FluxUnit::parse("erg/s/cm2/Angstrom").expect("invariant: a known unit");
         let layout = if looks_like_fits(path) {
@@ -35,7 +33,10 @@ impl Checker<'_> {
                 ..FitsLayout::default()
             })
         } else {
-            Layout::Text(TextLayout::new(unit, medium, plain))
+            let mut layout = TextLayout::new(unit, medium, plain);
+            layout.wavelength = Some(Column::Number(1));
+            layout.flux = Some(Column::Number(2));
+            Layout::Text(layout)
         };
         let (read, _) = read_spectrum(path, &layout)?;
         self.curves.push(PathBuf::from(path));
@@ -47,7 +48,7 @@ impl Checker<'_> {
         let keys = ["continuum", "star"];
         let (unit, medium) =
             self.axis_or(plan.wavelength_unit.as_ref(), plan.medium.as_ref(), &keys)?;
-        let mut curve = self.curve(&plan.file, (unit, medium), &["continuum", "star", "file"])?;
+        let mut curve = self.curve(&plan.file, (unit, medium))?;
         let velocity = plan.velocity_km_s.unwrap_or(0.0);
         if !(-2000.0..=2000.0).contains(&velocity) {
             return Err(self.file.point(

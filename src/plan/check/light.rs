@@ -112,7 +112,7 @@ impl Checker<'_> {
         .map_err(point)?;
         let s = &self.plan.spectrum[i];
         let axis = self.axis_or(s.wavelength_unit.as_ref(), s.medium.as_ref(), &keys)?;
-        let curve = self.curve(&plan.file, axis, &keys)?;
+        let curve = self.curve(&plan.file, axis)?;
         if let Some(bad) = curve.value.iter().find(|v| !(-0.05..=1.5).contains(*v)) {
             return Err(self.file.point(
                 Error::input(format!(

@@ -245,7 +245,7 @@ impl Checker<'_> {
             ));
         };
         let axis = self.axis_or(own.unit.as_ref(), own.medium.as_ref(), keys)?;
-        let curve = self.curve(&name, axis, &at)?;
+        let curve = self.curve(&name, axis)?;
         let (centre_aa, template) = Template::new(&name, &curve.wavelength_aa, &curve.value)
             .map_err(|e| self.file.point(e, &at))?;
         if !(model.window_aa.0..=model.window_aa.1).contains(&centre_aa) {

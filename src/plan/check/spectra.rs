@@ -212,7 +212,7 @@ impl Checker<'_> {
                 &keys,
             ));
         };
-        let curve = self.curve(name, axis, &keys)?;
+        let curve = self.curve(name, axis)?;
         if let Some(bad) = curve.value.iter().find(|w| !(**w > 0.0 && w.is_finite())) {
             return Err(self.file.point(
                 Error::input(format!("{name}: the width {bad} is not positive")),
