@@ -252,7 +252,57 @@ pub(super) fn doubt(code: &str) -> &'static str {
         "bands-disagree" => {
             "Different features of the same gas give different amounts; something is mixed in or a constant is wrong."
         }
-        _ => "Other remarks of the program.",
+        "sun-coarse" => {
+            "The picture of sunlight used under the gas is less sharp than the data in part of the range."
+        }
+        "red-bands-in-outline" | "water-levels-by-energy" => {
+            "How strongly one of these gases shines was computed with a simplified model of the molecule; it may be off by some per cent."
+        }
+        "afrho-aperture" => {
+            "The measure of dust is for a round opening that lets in as much light as the real one."
+        }
+        "samples-clipped" => {
+            "Some data points far off the rest, such as hits of cosmic rays, were dropped."
+        }
+        "spikes" => {
+            "Some data points lie far off the rest, as hits of cosmic rays do, and were kept."
+        }
+        "correlated-noise" | "resampling-uncorrelated" => {
+            "Neighbouring data points err together, which makes the result less sure; the error bars were raised for it where that was possible."
+        }
+        "errors-scaled" | "errors-too-small" => {
+            "The errors given with the data do not match their scatter."
+        }
+        "integral-gaps" | "integral-not-clipped" => {
+            "The light of a feature was summed up point by point, and some points are missing or may be hits of cosmic rays."
+        }
+        "temperature-assumed" | "temperature-open" => {
+            "A temperature that shapes the model is not well known."
+        }
+        "transmission-divided" => {
+            "The dimming by the air was divided out with a curve whose own errors are not known."
+        }
+        "line-discordant" | "line-scatter" => {
+            "Some lines of an element disagree with the others; the error bars were widened or the lines are named so that they can be left out."
+        }
+        "column-not-production" | "lifetime-unknown" => {
+            "The ratio is of what was in view; the ratio of what leaves the comet may differ."
+        }
+        "not-in-equilibrium" | "levels-without-decay" | "levels-without-return" => {
+            "The atoms may not have had the time, or the model not the data, to settle as assumed."
+        }
+        "no-calibration-error" => {
+            "The error of the brightness scale was not given and is not in the error bars."
+        }
+        "narrower-than-instrument" | "flux-on-limit" | "walkers-stuck" => {
+            "Part of the model ended at the edge of what it was allowed; its error bars are rough."
+        }
+        "far-from-epoch" | "geometry-differs" => {
+            "The place of the comet was computed far from the date of its orbit."
+        }
+        "spectrum-unused" => "One of the spectra shows none of the features asked for.",
+        "nothing-to-compare" => "No published comets have these ratios.",
+        _ => "A technical remark; open it to read it.",
     }
 }
 
